@@ -1,0 +1,1 @@
+export type { Acquisition } from "./stack/acquisition.ts";

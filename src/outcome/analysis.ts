@@ -1,0 +1,35 @@
+import type { Spot } from "../frame/spot.ts";
+import type { Stack } from "../stack/stack.ts";
+import type { Result } from "./result.ts";
+
+/** A fitted curve with its standard uncertainty, to draw. */
+export interface CurvePoint {
+  readonly delay: number;
+  readonly value: number;
+  readonly u: number;
+}
+
+/** What the report needs beside the result: the curves, and each frame's fitted spot. */
+export interface Analysis {
+  readonly result: Result;
+  readonly stack: Stack;
+  /** One a frame; null where no spot could be fitted. */
+  readonly spots: readonly (Spot | null)[];
+  /** Variance per axis (µm²) of the preferred law of spread over delay (ns), across the window. */
+  readonly spreadCurve: readonly CurvePoint[];
+  /** Light (photons a frame) of the preferred decay; empty without a decay. */
+  readonly lightCurve: readonly CurvePoint[];
+  /** Residuals of the decay fit in standard deviations, one a frame; null where not used. */
+  readonly lightResiduals: readonly (number | null)[];
+}
+
+/** What the user may set of the analysis. */
+export interface AnalysisOptions {
+  /** Window of delays for the law of spread, ns. */
+  readonly from?: number;
+  readonly to?: number;
+  /** Seed of the Monte Carlo intervals. */
+  readonly seed?: number;
+  /** Told after each frame. */
+  readonly onProgress?: (done: number, total: number) => void;
+}

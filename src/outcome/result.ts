@@ -1,0 +1,158 @@
+import { z } from "zod";
+
+/** The shape of result.json, version 1. The published JSON Schema is emitted from it (scripts/build.mjs). */
+const number = z.number();
+const interval = z.tuple([number, number]);
+
+export const quantitySchema = z
+  .strictObject({
+    value: number.describe("best estimate; for an upper limit, the limit itself"),
+    u: number.min(0).describe("combined standard uncertainty, k = 1"),
+    u_statistical: number.min(0).describe("type A part: counting statistics through the fit"),
+    u_systematic: number.min(0).describe("type B part: pixel size, time base, temperature"),
+    interval95: interval.describe("95 % coverage interval"),
+    unit: z.string(),
+    from: z
+      .enum(["line", "power_law", "arrest", "broken_line", "field", "decay", "outcome"])
+      .describe("which fit the number comes from"),
+    upper_limit: z
+      .boolean()
+      .optional()
+      .describe("true where nothing moved: value is a one-sided 95 % upper limit"),
+  })
+  .describe("a quantity with its uncertainty");
+
+const withU = z.strictObject({ value: number, u: number.min(0) });
+
+export const lawSchema = z.strictObject({
+  formula: z.string(),
+  parameters: z.record(z.string(), z.strictObject({ value: number, u: number.min(0), unit: z.string() })),
+  chi2: number,
+  degrees_of_freedom: z.number().int(),
+  p_value: number.describe("probability of a χ² at least as large if the law is true"),
+  aicc: number,
+  weight: number.describe("corrected Akaike weight among the candidates"),
+  converged: z.boolean(),
+});
+
+export const frameSchema = z.strictObject({
+  index: z.number().int(),
+  delay_ns: number,
+  photons: number.nullable(),
+  u_photons: number.nullable(),
+  x_um: number.nullable(),
+  y_um: number.nullable(),
+  variance_um2: number.nullable().describe("width per axis: half the trace of Σ on a map, Σxx on a trace"),
+  u_variance_um2: number.nullable(),
+  variance_xx_um2: number.nullable(),
+  variance_xy_um2: number.nullable(),
+  variance_yy_um2: number.nullable(),
+  msd_um2: number.nullable().describe("tr(Σ − Σ₀) relative to the fitted intercept"),
+  u_msd_um2: number.nullable(),
+  background: number.nullable().describe("photons per pixel"),
+  reduced_chi2: number.nullable(),
+  hot_pixels: z.number().int(),
+  used: z.boolean().describe("in the fit of the law of spread"),
+  used_in_decay: z.boolean(),
+  flags: z.array(
+    z.enum([
+      "before-pulse",
+      "too-dim",
+      "saturated",
+      "empty",
+      "fit-failed",
+      "outside-window",
+      "trap-dominated",
+    ]),
+  ),
+});
+
+export const resultSchema = z.strictObject({
+  schema: z.literal("gleamwalk.result/1"),
+  input: z.strictObject({
+    file: z.string(),
+    sha256: z.string(),
+    shape: z.array(z.number().int()),
+    axes: z.string(),
+  }),
+  acquisition: z.record(z.string(), z.strictObject({ text: z.string(), from: z.string() })),
+  verdict: z.strictObject({
+    level: z.enum(["sound", "caution", "unsound"]),
+    reasons: z.array(
+      z.strictObject({
+        code: z.string(),
+        level: z.enum(["note", "caution", "unsound"]),
+        text: z.string().describe("what was seen"),
+        advice: z.string().describe("what to do about it"),
+      }),
+    ),
+  }),
+  quantities: z.strictObject({
+    diffusion_coefficient: quantitySchema,
+    lifetime: quantitySchema.nullable(),
+    diffusion_length: quantitySchema.nullable(),
+    mobility: quantitySchema.nullable(),
+  }),
+  lengths: z
+    .array(z.strictObject({ formula: z.string(), value_um: number, u_um: number.min(0) }))
+    .describe("L by its definition and by the formulas that papers quote: √(Dτ), √(2Dτ), √(4Dτ)"),
+  tensor: z
+    .strictObject({ xx: withU, xy: withU, yy: withU, major: withU, minor: withU, angle_deg: withU })
+    .nullable()
+    .describe("diffusion tensor, cm²/s, angle from the x axis; maps only"),
+  transport: z.strictObject({
+    preferred: z.enum(["line", "power_law", "arrest", "broken_line"]),
+    window: z.strictObject({ from_ns: number, to_ns: number, frames: z.number().int() }),
+    models: z.record(z.enum(["line", "power_law", "arrest", "broken_line"]), lawSchema.nullable()),
+    exponent: withU.nullable().describe("α of Σ = Σ₀ + 2Γ t^α"),
+    runs_p_value: number.nullable(),
+    birge_factor: number.min(1),
+  }),
+  decay: z
+    .strictObject({
+      preferred: z.enum(["exponential", "two_exponentials", "stretched", "annihilation"]),
+      models: z.record(
+        z.enum(["exponential", "two_exponentials", "stretched", "annihilation"]),
+        lawSchema.nullable(),
+      ),
+      amplitude_averaged_lifetime_ns: withU,
+      intensity_averaged_lifetime_ns: withU,
+      birge_factor: number.min(1),
+    })
+    .nullable(),
+  density: z
+    .strictObject({
+      density_per_cm2: withU,
+      from: z.enum(["stated", "blue shift"]),
+      degeneracy_temperature_k: withU.nullable(),
+      filling: number.nullable().describe("n/n_Q"),
+      degenerate_mobility: withU.nullable(),
+    })
+    .nullable(),
+  field: z.null().describe("the whole-stack fit, when made"),
+  budget: z.array(
+    z.strictObject({
+      quantity: z.enum(["diffusion_coefficient", "diffusion_length", "mobility"]),
+      input: z.string(),
+      type: z.enum(["A", "B"]),
+      u: number.min(0),
+      unit: z.string(),
+      sensitivity: number,
+      contribution: number.min(0).describe("|sensitivity|·u in the quantity's unit"),
+    }),
+  ),
+  frames: z.array(frameSchema),
+  provenance: z.strictObject({
+    version: z.string(),
+    options: z.record(z.string(), z.union([z.string(), z.number(), z.boolean()])),
+    started: z.string(),
+    seconds: number,
+  }),
+});
+
+export type Result = z.infer<typeof resultSchema>;
+export type Quantity = z.infer<typeof quantitySchema>;
+export type Law = z.infer<typeof lawSchema>;
+export type FrameRow = z.infer<typeof frameSchema>;
+export type TransportLaw = Result["transport"]["preferred"];
+export type DecayLaw = NonNullable<Result["decay"]>["preferred"];
