@@ -13,7 +13,7 @@ const oneOf = <T>(random: Random, list: readonly T[]): T => list[below(random, l
  */
 export function mutateBytes(original: Buffer, seed: number): Buffer {
   const random = createRandom(seed);
-  let bytes = Buffer.from(original);
+  let bytes: Buffer = Buffer.from(original);
   const wounds = 1 + below(random, 3);
   for (let i = 0; i < wounds && bytes.length > 0; i++) bytes = oneOf(random, BYTE_WOUNDS)(bytes, random);
   return bytes;
