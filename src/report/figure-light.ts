@@ -1,0 +1,172 @@
+import type { Analysis } from "../outcome/analysis.ts";
+import type { FrameRow } from "../outcome/result.ts";
+import {
+  ASIDE_SYMBOL,
+  asideColour,
+  asideEntry,
+  assemble,
+  common,
+  DATA,
+  type Drawing,
+  INK,
+  type KeyEntry,
+  keyRow,
+  LAW,
+  padded,
+} from "./figure-parts.ts";
+import { powerOfTen, superscript } from "./notation.ts";
+import { counted, DECAY_LAW, flagCounts, mainFlag } from "./wording.ts";
+
+type WithLight = FrameRow & { readonly photons: number; readonly u_photons: number };
+
+const HEIGHT = 290;
+const RESIDUAL_HEIGHT = 120;
+
+/** Light under the spot over delay on a logarithmic scale, with the preferred decay, above its residuals. */
+export function lightFigure(drawing: Drawing, analysis: Analysis): string {
+  const { result } = analysis;
+  const rows = result.frames.filter(hasLight);
+  const x = padded(
+    result.frames.map((row) => row.delay_ns),
+    0.02,
+  );
+  const key = keyRow(drawing, keyEntries(analysis, rows));
+  const panels = [key, { node: lightPanel(drawing, analysis, rows, x), height: HEIGHT }];
+  if (result.decay !== null)
+    panels.push({ node: residualPanel(drawing, analysis, x), height: RESIDUAL_HEIGHT });
+  return assemble(panels, {
+    id: "light",
+    title: `Light under the spot, ${result.input.file}`,
+    description: describe(analysis, rows.length),
+  });
+}
+
+function hasLight(row: FrameRow): row is WithLight {
+  return row.photons !== null && row.u_photons !== null && row.photons > 0;
+}
+
+function lightPanel(
+  drawing: Drawing,
+  analysis: Analysis,
+  rows: readonly WithLight[],
+  x: [number, number],
+): Element {
+  const { plot } = drawing;
+  const last = analysis.result.decay === null;
+  const used = rows.filter((row) => row.used_in_decay);
+  const domain = decades([
+    ...rows.map((row) => row.photons),
+    ...analysis.lightCurve.map((point) => point.value),
+  ]);
+  const clamp = (value: number) => Math.min(domain[1], Math.max(domain[0], value));
+  return plot.plot({
+    ...common(drawing, HEIGHT),
+    marginBottom: last ? 40 : 12,
+    x: {
+      label: last ? "Delay (ns)" : null,
+      domain: x,
+      labelAnchor: "center",
+      labelArrow: "none",
+      ticks: 7,
+      ...(last ? {} : { tickFormat: () => "" }),
+    },
+    y: {
+      type: "log",
+      label: "Light (photons a frame)",
+      domain,
+      labelAnchor: "center",
+      labelArrow: "none",
+      ticks: 5,
+      tickFormat: (value: number) => decadeText(value, domain),
+    },
+    marks: [
+      plot.frame({ stroke: INK, strokeOpacity: 0.35 }),
+      plot.link(rows, {
+        x1: "delay_ns",
+        x2: "delay_ns",
+        y1: (row: WithLight) => clamp(row.photons - row.u_photons),
+        y2: (row: WithLight) => clamp(row.photons + row.u_photons),
+        stroke: (row: WithLight) => (row.used_in_decay ? DATA : asideColour(null)),
+        strokeOpacity: 0.75,
+      }),
+      plot.dot(used, { x: "delay_ns", y: "photons", r: 2.6, fill: DATA }),
+      plot.lineY(analysis.lightCurve, { x: "delay", y: "value", stroke: LAW, strokeWidth: 2 }),
+      ...flagCounts(rows.filter((row) => !row.used_in_decay)).map(([flag]) =>
+        plot.dot(
+          rows.filter((row) => !row.used_in_decay && mainFlag(row) === flag),
+          {
+            x: "delay_ns",
+            y: "photons",
+            symbol: ASIDE_SYMBOL[flag],
+            r: 3.2,
+            stroke: asideColour(flag),
+            strokeWidth: 1.3,
+          },
+        ),
+      ),
+    ],
+  });
+}
+
+function residualPanel(drawing: Drawing, analysis: Analysis, x: [number, number]): Element {
+  const { plot } = drawing;
+  const points = analysis.result.frames.flatMap((row) => {
+    const residual = analysis.lightResiduals[row.index] ?? null;
+    return residual === null ? [] : [{ delay: row.delay_ns, residual }];
+  });
+  const reach = points.reduce((most, point) => Math.max(most, Math.abs(point.residual)), 3) * 1.12;
+  return plot.plot({
+    ...common(drawing, RESIDUAL_HEIGHT),
+    marginTop: 4,
+    x: { label: "Delay (ns)", domain: x, labelAnchor: "center", labelArrow: "none", ticks: 7 },
+    y: {
+      label: "Residual (s.d.)",
+      domain: [-reach, reach],
+      labelAnchor: "center",
+      labelArrow: "none",
+      ticks: 3,
+    },
+    marks: [
+      plot.frame({ stroke: INK, strokeOpacity: 0.35 }),
+      plot.ruleY([-2, 2], { stroke: INK, strokeOpacity: 0.35, strokeDasharray: "3 3" }),
+      plot.ruleY([0], { stroke: LAW, strokeWidth: 1.5 }),
+      plot.dot(points, { x: "delay", y: "residual", r: 2.4, fill: DATA }),
+    ],
+  });
+}
+
+/** Half a decade of room below the faintest point at most, so that one dead frame cannot flatten the curve. */
+function decades(values: readonly number[]): [number, number] {
+  const high = values.reduce((a, b) => Math.max(a, b), 1);
+  const low = values.reduce((a, b) => (b > 0 ? Math.min(a, b) : a), high);
+  return [Math.max(low / 1.5, high * 1e-6), high * 1.5];
+}
+
+/** Labels whole decades, 10³; where the range holds fewer than two of them, also 2×10³ and 5×10³. */
+export function decadeText(value: number, domain: readonly [number, number]): string {
+  const exponent = Math.floor(Math.log10(value) + 1e-9);
+  const digit = Math.round(value / 10 ** exponent);
+  const decadesInside = Math.floor(Math.log10(domain[1])) - Math.ceil(Math.log10(domain[0])) + 1;
+  if (digit === 1) return `10${superscript(String(exponent))}`;
+  return decadesInside < 2 && (digit === 2 || digit === 5) ? `${digit}${powerOfTen(exponent)}` : "";
+}
+
+function keyEntries(analysis: Analysis, rows: readonly FrameRow[]): KeyEntry[] {
+  const { decay } = analysis.result;
+  const entries: KeyEntry[] = [{ text: "used", symbol: "circle", colour: DATA, filled: true }];
+  if (decay !== null)
+    entries.push({ text: DECAY_LAW[decay.preferred], symbol: "line", colour: LAW, filled: true });
+  return [
+    ...entries,
+    ...flagCounts(rows.filter((row) => !row.used_in_decay)).map(([flag]) => asideEntry(flag)),
+  ];
+}
+
+function describe(analysis: Analysis, count: number): string {
+  const { decay } = analysis.result;
+  const law =
+    decay === null
+      ? "No law of decay was fitted."
+      : `The curve is the fitted decay (${DECAY_LAW[decay.preferred]}); below it the residuals in standard deviations.`;
+  return `Detected photons under the spot over delay in nanoseconds, logarithmic scale, ${counted(count, "frame")}. ${law}`;
+}
