@@ -102,8 +102,10 @@ function stripOf({ width, height, data }: Picture, deflate: WriteOptions["deflat
   const size = data.BYTES_PER_ELEMENT;
   const bytes = new Uint8Array(data.length * size);
   const view = new DataView(bytes.buffer);
-  if (data instanceof Uint16Array) data.forEach((value, i) => view.setUint16(i * size, value, true));
-  else data.forEach((value, i) => view.setFloat32(i * size, value, true));
+  for (let i = 0; i < data.length; i++) {
+    if (data instanceof Uint16Array) view.setUint16(i * size, data[i]!, true);
+    else view.setFloat32(i * size, data[i]!, true);
+  }
   return deflate === undefined ? bytes : deflate(bytes);
 }
 
