@@ -1,1 +1,3 @@
-export {};
+/** What opens files: the part of the library that needs Node's own modules. */
+export { type FrameInspection, type Inspection, inspectStack } from "./stack/inspect.ts";
+export { type OpenOptions, openRaw, openStack, type RawStack } from "./stack/open.ts";

@@ -17,17 +17,19 @@ export type FrameCheck = (frame: Float64Array, index: number) => void;
  * A value that is no finite number is refused. So is one below zero and further below the dark level than noise
  * reaches: a camera does not give it, something was subtracted and the noise of what is left is not known. Values
  * above zero but below the dark level are dead pixels when few, and a wrong offset when many.
+ * @param detector null where the values are only looked at: then none is too low
  * @param dark dark frame, in place of the constant offset
  */
 export function frameCheck(
   file: string,
   kind: Recording["kind"],
   width: number,
-  detector: Detector,
-  dark: Float64Array | null,
+  detector: Detector | null,
+  dark: Float64Array | null = null,
 ): FrameCheck {
-  const level = dark === null ? detector.offset : dark.reduce((least, each) => Math.min(least, each));
-  const floor = level - DEEPEST_NOISE * detector.readNoise;
+  const level = dark === null ? (detector?.offset ?? 0) : dark.reduce((least, each) => Math.min(least, each));
+  const readNoise = detector?.readNoise ?? 0;
+  const floor = detector === null ? -Number.MAX_VALUE : level - DEEPEST_NOISE * readNoise;
   const place = (frame: number, pixel: number) => where(kind, width, frame, pixel);
   return (frame, index) => {
     let below = 0;
@@ -35,7 +37,7 @@ export function frameCheck(
       const value = frame[i]!;
       if (value >= floor && value < Number.POSITIVE_INFINITY) continue;
       if (!Number.isFinite(value)) throw notFinite(file, value, place(index, i));
-      if (value < 0) throw tooLow(file, value, level, detector, place(index, i));
+      if (value < 0) throw tooLow(file, value, level, readNoise, place(index, i));
       below++;
     }
     if (below > DEAD_SHARE * frame.length) throw offsetTooHigh(file, index, below / frame.length, floor);
@@ -63,11 +65,11 @@ function notFinite(file: string, value: number, place: Place): InputFault {
   });
 }
 
-function tooLow(file: string, value: number, level: number, detector: Detector, place: Place): InputFault {
+function tooLow(file: string, value: number, level: number, readNoise: number, place: Place): InputFault {
   const shown = Number(value.toPrecision(6));
   return new InputFault(
     `${file}: ${place.text}, holds ${shown}, far below the dark level ${Number(level.toPrecision(6))} for a read noise of ` +
-      `${detector.readNoise}; give the counts before any background was subtracted, or state detector.offset and detector.read_noise`,
+      `${readNoise}; give the counts before any background was subtracted, or state detector.offset and detector.read_noise`,
     { file, where: place.frame },
   );
 }
