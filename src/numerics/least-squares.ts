@@ -66,7 +66,8 @@ export interface LeastSquaresFit {
  *   University of Denmark, report IMM-REP-1999-05);
  * - a stop that knows no units: the relative offset of Bates and Watts, Technometrics 23 (1981) 179, the length of the
  *   remaining step in standard errors, below 1e-8;
- * - restarts from the best point with fresh scales and damping where no step helps;
+ * - restarts from the best point with fresh scales and damping where no step helps, and a second descent with short
+ *   steps where the first found no minimum;
  * - at the end a few Gauss–Newton steps by QR, which does not square the condition number as the normal equations do;
  * - parameters that press against a bound are held there until the gradient turns;
  * - covariance by QR and singular values, and the parameters that the data do not determine.
@@ -97,6 +98,10 @@ const MAX_REWEIGHTINGS = 50;
 const MAX_RESTARTS = 3;
 const OFFSET_TOLERANCE = 1e-8;
 const MAX_DAMPING = 1e12;
+const MIN_DAMPING = 1e-15;
+/** λ where the matrix has a unit diagonal: nearly Gauss–Newton, and a hundredth of the steepest descent. */
+const BOLD_DAMPING = 1e-3;
+const CAUTIOUS_DAMPING = 100;
 
 function predictionAtStart(problem: LeastSquaresProblem): Float64Array {
   return Float64Array.from(problem.prediction(Float64Array.from(problem.start)));
@@ -106,8 +111,12 @@ function fitOnce(problem: LeastSquaresProblem, sigma: ArrayLike<number> | undefi
   const task = new WhitenedProblem(problem, sigma);
   const start = task.at(task.clamp(Float64Array.from(problem.start)));
   if (!Number.isFinite(start.chi2)) return notFinite(task, start);
-  const descent = descend(task, start, problem.maxIterations ?? 500);
-  return refine(task, descent);
+  const limit = problem.maxIterations ?? 500;
+  const bold = refine(task, descend(task, start, limit, BOLD_DAMPING));
+  if (bold.converged || bold.iterations >= limit) return bold;
+  const cautious = refine(task, descend(task, start, limit - bold.iterations, CAUTIOUS_DAMPING));
+  const better = cautious.chi2 < bold.chi2 ? cautious : bold;
+  return { ...better, iterations: bold.iterations + cautious.iterations };
 }
 
 interface Descent {
@@ -118,11 +127,11 @@ interface Descent {
 }
 
 /** Library steps until the relative offset vanishes or nothing helps. */
-function descend(task: WhitenedProblem, start: Point, maxIterations: number): Descent {
+function descend(task: WhitenedProblem, start: Point, maxIterations: number, startDamping: number): Descent {
   let point = start;
   let jacobian = task.jacobianAt(point);
   let equations = new NormalEquations(task, point, jacobian, undefined);
-  let damping = 1e-3;
+  let damping = startDamping;
   let growth = 2;
   let restarts = 0;
   let improved = false;
@@ -135,7 +144,7 @@ function descend(task: WhitenedProblem, start: Point, maxIterations: number): De
     const trial = libraryStep(task, point, jacobian, equations, damping);
     if (trial) {
       const ratio = (point.chi2 - trial.chi2) / equations.predictedFall(point, trial);
-      damping = Math.max(damping * Math.max(1 / 9, 1 - (2 * ratio - 1) ** 3), 1e-15);
+      damping = Math.max(damping * Math.max(1 / 9, 1 - (2 * ratio - 1) ** 3), MIN_DAMPING);
       growth = 2;
       improved = true;
       point = trial;
@@ -149,7 +158,7 @@ function descend(task: WhitenedProblem, start: Point, maxIterations: number): De
       if (!improved || restarts >= MAX_RESTARTS) return ended("stalled", iteration + 1);
       restarts += 1;
       improved = false;
-      damping = 1e-3;
+      damping = startDamping;
       growth = 2;
       equations = new NormalEquations(task, point, jacobian, undefined);
     }
