@@ -104,7 +104,15 @@ function keyMark(plot: Drawing["plot"], entry: Placed, y: number): Plot.Markish 
   const { x, colour, symbol } = entry;
   if (symbol === "line") {
     const dash = entry.dashed === true ? { strokeDasharray: "4 3" } : {};
-    return plot.link([entry], { x1: [x - 9], x2: [x + 9], y1: [y], y2: [y], stroke: colour, strokeWidth: 2, ...dash });
+    return plot.link([entry], {
+      x1: [x - 9],
+      x2: [x + 9],
+      y1: [y],
+      y2: [y],
+      stroke: colour,
+      strokeWidth: 2,
+      ...dash,
+    });
   }
   const fill = entry.filled ? colour : "none";
   return plot.dot([entry], { x: [x], y: [y], symbol, r: 4, fill, stroke: colour, strokeWidth: 1.3 });

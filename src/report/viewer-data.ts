@@ -86,11 +86,15 @@ function readCells(stack: Stack, region: Region, shown: readonly FrameRow[]): Fl
 /** A quarter of the noise of a dark cell; in counting, a whole number of the smallest steps of the detector. */
 function leastStep(stack: Stack, spots: readonly (Spot | null)[], region: Region): number {
   const { gain, readNoise, excessNoise } = stack.acquisition.detector;
-  const backgrounds = spots.flatMap((spot) => (spot === null ? [] : [Math.max(0, spot.background)])).sort((a, b) => a - b);
+  const backgrounds = spots
+    .flatMap((spot) => (spot === null ? [] : [Math.max(0, spot.background)]))
+    .sort((a, b) => a - b);
   const background = backgrounds[Math.floor(backgrounds.length / 2)] ?? 0;
   const noise = Math.sqrt(region.bin * region.binDown * (excessNoise * background + (readNoise / gain) ** 2));
   const count = 1 / gain;
-  return readNoise > 0 || stack.dark !== null ? Math.max(noise, 0.1 * count) / 4 : count * Math.max(1, Math.round(noise / 4 / count));
+  return readNoise > 0 || stack.dark !== null
+    ? Math.max(noise, 0.1 * count) / 4
+    : count * Math.max(1, Math.round(noise / 4 / count));
 }
 
 function quantise(values: Float64Array, least: number): { low: number; step: number; bytes: Uint8Array } {
@@ -125,7 +129,8 @@ function describeFrame(row: FrameRow, spot: Spot | null, total: number): ViewerF
   if (row.hot_pixels > 0) numbers.push(["Hot pixels left out", String(row.hot_pixels)]);
   return {
     title: `Frame ${row.index} (0 to ${total - 1}), ${plain(row.delay_ns)} ns`,
-    spot: spot === null ? null : [spot.photons, ...spot.centre, ...spot.covariance, spot.background].map(short),
+    spot:
+      spot === null ? null : [spot.photons, ...spot.centre, ...spot.covariance, spot.background].map(short),
     used: row.used,
     flags: row.flags.map((flag) => FLAG[flag]).join(", "),
     numbers,

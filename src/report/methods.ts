@@ -1,0 +1,116 @@
+import type { Analysis } from "../outcome/analysis.ts";
+import type { Result } from "../outcome/result.ts";
+import { concise, plain } from "./notation.ts";
+import {
+  counted,
+  DECAY_LAW,
+  flagCounts,
+  probability,
+  quantityText,
+  TRANSPORT_LAW,
+  unitText,
+} from "./wording.ts";
+
+/**
+ * The methods text for a supplement, one string a paragraph, built from what this analysis did and found. It states
+ * the model, the estimator, the window, the formulas and the version; it claims nothing that was not done.
+ */
+export function methodsText(analysis: Analysis): string[] {
+  return [
+    spotText(analysis),
+    spreadMethod(analysis.result),
+    decayMethod(analysis.result),
+    outcomeText(analysis),
+  ].filter((text) => text !== "");
+}
+
+function spotText({ stack, result }: Analysis): string {
+  const { detector, space } = stack.acquisition;
+  const shape =
+    stack.kind === "map"
+      ? "a two-dimensional Gaussian with free centre, covariance matrix Σ, volume and background (seven parameters)"
+      : "a one-dimensional Gaussian with free centre, variance Σ, area and background (four parameters)";
+  const noise =
+    detector.readNoise > 0 || detector.excessNoise > 1
+      ? `the camera's noise (variance ${plain(detector.excessNoise)}·gain·signal + (${plain(detector.readNoise)} counts)², gain ${plain(detector.gain)} counts per photon, taken from the model)`
+      : "counting (Poisson) noise";
+  return (
+    `Each of the ${counted(stack.frames, "frame")} of ${result.input.file} (${result.input.shape.join(" × ")}, pixel ${plain(space.pixel.value)} µm at the sample) ` +
+    `was fitted with ${shape} by maximum likelihood for ${noise}; uncertainties are from the inverse Fisher matrix.${asideText(result)}`
+  );
+}
+
+function asideText(result: Result): string {
+  const counts = flagCounts(result.frames).map(([flag, count]) => `${count} ${flag}`);
+  return counts.length === 0
+    ? ""
+    : ` Frames set aside: ${counts.join(", ")}; the width itself played no part in that choice.`;
+}
+
+function spreadMethod({ transport, quantities, tensor }: Result): string {
+  const { window, preferred, models } = transport;
+  const law = models[preferred] ?? null;
+  const others = Object.entries(models).filter(
+    ([name, model]) => model !== null && name !== preferred,
+  ).length;
+  const choice =
+    others > 0 && law !== null
+      ? ` It was chosen among ${others + 1} laws by corrected Akaike weight (${law.weight.toFixed(2)}) together with goodness of fit`
+      : " It was the only law tried";
+  const fit =
+    law !== null && law.degrees_of_freedom > 0
+      ? ` (χ²/dof = ${(law.chi2 / law.degrees_of_freedom).toFixed(2)}, p ${equalsText(law.p_value)})`
+      : "";
+  const birge =
+    transport.birge_factor > 1
+      ? ` Uncertainties were widened by the Birge factor ${transport.birge_factor.toFixed(2)}.`
+      : "";
+  const D = quantities.diffusion_coefficient;
+  return (
+    `The ${tensor === null ? "variance" : "covariance matrix"} over delay t, from ${plain(window.from_ns)} to ${plain(window.to_ns)} ns (${counted(window.frames, "frame")}), ` +
+    `was fitted with a ${TRANSPORT_LAW[preferred]}${law === null ? "" : `, ${law.formula},`} with a free intercept Σ₀, which takes up the excitation spot, ` +
+    "the point-spread function and the pixel; weights are from the fitted law and the fitted decay, not from single frames." +
+    `${choice}${fit}.${birge} This gives D = ${quantityText(D)} ${unitText(D.unit)}.`
+  );
+}
+
+function decayMethod({ decay, quantities }: Result): string {
+  const { lifetime } = quantities;
+  if (decay === null || lifetime === null) return "";
+  const law = decay.models[decay.preferred] ?? null;
+  return (
+    `The light N(t) under the fitted spot (its volume, not the sum over the picture) was fitted with ${DECAY_LAW[decay.preferred]}` +
+    `${law === null ? "" : `, ${law.formula}`}; τ = ${quantityText(lifetime)} ns.`
+  );
+}
+
+function outcomeText({ stack, result }: Analysis): string {
+  const { diffusion_length: L, mobility } = result.quantities;
+  const { temperature, emissionOrder } = stack.acquisition.sample;
+  const parts: string[] = [];
+  if (emissionOrder === 2) {
+    parts.push(
+      "The light was taken as proportional to the density squared; D, τ and L are those of the density.",
+    );
+  }
+  if (L !== null) {
+    parts.push(
+      `The diffusion length is the root of L² = ∫ ½·MSD₁(t)·(−dN/dt) dt / N₀ per axis, which is √(Dτ) for normal diffusion and one exponential: L ${L.upper_limit === true ? "" : "= "}${quantityText(L)} µm.`,
+    );
+  }
+  if (mobility !== null && temperature !== null) {
+    parts.push(
+      `The equivalent mobility is μ = eD/(k_B T) at T = ${concise(temperature.value, temperature.u)} K: μ ${mobility.upper_limit === true ? "" : "= "}${quantityText(mobility)} cm²/(V s).`,
+    );
+  }
+  parts.push(
+    "Numbers in parentheses are combined standard uncertainties (k = 1) in the last digits, from counting statistics (type A) and calibration (type B), combined as in JCGM 100:2008.",
+    `The analysis was made with gleamwalk ${result.provenance.version}.`,
+  );
+  return parts.join(" ");
+}
+
+function equalsText(p: number): string {
+  const text = probability(p);
+  return text.startsWith("<") ? text : `= ${text}`;
+}

@@ -1,0 +1,67 @@
+import type { Analysis } from "../outcome/analysis.ts";
+import { type Deflate, type ViewerData, viewerData } from "./viewer-data.ts";
+import { frameViewer } from "./viewer-script.ts";
+import { counted } from "./wording.ts";
+
+/** The frame viewer's part of the page: a static figure of three cuts, and the viewer itself where scripts run. */
+export function viewerHtml(analysis: Analysis, deflate: Deflate, profiles: string): string {
+  const { data, cells } = viewerData(analysis, deflate);
+  return `<section aria-labelledby="frames" class="${data.kind}">
+<h2 id="frames">Frame by frame</h2>
+<noscript><p>The frame viewer needs scripts; the cuts below and the table of frames show the same data.</p></noscript>
+<div id="viewer" hidden>
+${controls(data)}
+<div class="maps">
+${screen("map", "Recorded", ramp("light", "photons per pixel"))}
+${screen("model", "Model", "")}
+${screen("residual", "Residual", `<div class="ramp"><span>−4</span><canvas id="residual-bar" aria-hidden="true"></canvas><span>4</span><span>standard deviations</span></div>`)}
+</div>
+<div class="beside">
+${cut("cut-x", data.kind === "map" ? "Cut along x, mean of a ±σ strip, photons per pixel" : "This frame's line, photons per pixel")}
+${data.kind === "map" ? cut("cut-y", "Cut along y, mean of a ±σ strip, photons per pixel") : ""}
+<div><table><caption>Numbers of this frame</caption><tbody id="frame-numbers"></tbody></table></div>
+</div>
+</div>
+<figure>${profiles}<figcaption>First, middle and last frame used: recorded light across the spot, its fit, and the first frame's fit for comparison.</figcaption></figure>
+<script type="application/json" id="viewer-data">${scriptSafe(JSON.stringify(data))}</script>
+<script type="application/octet-stream" id="viewer-cells">${cells}</script>
+<script>
+(${frameViewer.toString()})().catch(() => {
+  const note = document.createElement("p");
+  note.textContent = "This browser cannot show the frame viewer; the cuts below and the table of frames show the same data.";
+  document.getElementById("viewer").replaceWith(note);
+});
+addEventListener("beforeprint", () => { for (const part of document.querySelectorAll("details")) part.open = true; });
+</script>
+</section>`;
+}
+
+function controls(data: ViewerData): string {
+  const last = data.frames.length - 1;
+  return `<div class="controls">
+<label class="wide" for="frame">${counted(data.frames.length, "frame")}: drag, or use the arrow keys</label>
+<button type="button" id="frame-back" aria-label="Previous frame">‹</button>
+<input type="range" id="frame" min="0" max="${last}" step="1" value="${data.first}">
+<button type="button" id="frame-on" aria-label="Next frame">›</button>
+<label class="wide"><input type="checkbox" id="same-scale"${data.kind === "trace" ? " checked disabled" : ""}> Same light scale for all frames</label>
+<p class="live" id="frame-text" aria-live="polite"></p>
+</div>`;
+}
+
+function screen(id: string, title: string, below: string): string {
+  const bar = id === "model" ? `<p class="soft" id="scale-bar"></p>` : below;
+  return `<figure><figcaption>${title}</figcaption><div class="screen"><canvas id="${id}" role="img" aria-label="${title}"></canvas><svg id="${id}-over" aria-hidden="true"></svg></div>${bar}</figure>`;
+}
+
+function ramp(id: string, unit: string): string {
+  return `<div class="ramp"><span id="${id}-low"></span><canvas id="${id}-bar" aria-hidden="true"></canvas><span id="${id}-high"></span><span>${unit}</span></div>`;
+}
+
+function cut(id: string, caption: string): string {
+  return `<figure><svg id="${id}" class="cut" role="img" aria-label="${caption}"></svg><figcaption>${caption}</figcaption></figure>`;
+}
+
+/** JSON inside a script element must not be able to close it. */
+function scriptSafe(json: string): string {
+  return json.replaceAll("<", "\\u003c").replaceAll("\u2028", "\\u2028").replaceAll("\u2029", "\\u2029");
+}
