@@ -25,17 +25,23 @@ export function seedFrom(text: string | undefined): number | undefined {
   if (text === undefined) return undefined;
   const seed = /^\d+$/.test(text.trim()) ? Number(text) : Number.NaN;
   if (Number.isSafeInteger(seed)) return seed;
-  throw new InputFault(`--seed "${text}" is not a whole number from 0 to 2^53 − 1; write one such as --seed 1`, {
-    where: "--seed",
-  });
+  throw new InputFault(
+    `--seed "${text}" is not a whole number from 0 to 2^53 − 1; write one such as --seed 1`,
+    {
+      where: "--seed",
+    },
+  );
 }
 
 /** @throws InputFault when the window is upside down */
 export function windowFrom(from: string | undefined, to: string | undefined): { from?: number; to?: number } {
   const [first, last] = [timeFrom(from, "--from"), timeFrom(to, "--to")];
   if (first !== undefined && last !== undefined && first >= last)
-    throw new InputFault(`--from ${first} ns is not before --to ${last} ns; give the earlier delay as --from`, {
-      where: "--from",
-    });
+    throw new InputFault(
+      `--from ${first} ns is not before --to ${last} ns; give the earlier delay as --from`,
+      {
+        where: "--from",
+      },
+    );
   return { ...(first === undefined ? {} : { from: first }), ...(last === undefined ? {} : { to: last }) };
 }

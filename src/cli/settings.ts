@@ -1,4 +1,5 @@
 import { InvalidArgumentError } from "commander";
+import type { OpenOptions } from "../stack/open.ts";
 
 /** What the user may say on the command line about the recording; each overrides the acquisition file. */
 export interface SettingOptions {
@@ -29,6 +30,12 @@ export function overridesFrom(options: SettingOptions): Record<string, string> {
     if (text !== undefined) overrides[KEY_OF_OPTION[option]] = text;
   }
   return overrides;
+}
+
+/** How a recording is to be opened. */
+export function openOptions(options: SettingOptions): OpenOptions {
+  const overrides = overridesFrom(options);
+  return options.acquisition === undefined ? { overrides } : { overrides, acquisition: options.acquisition };
 }
 
 /** Collects one `--set KEY=VALUE`. */

@@ -13,9 +13,12 @@ describe("a delay on the command line", () => {
     expect(timeFrom(text, "--from")).toBeCloseTo(delay, 12);
   });
 
-  test.each(["", "soon", "1 um", "1 ns 2", "nan", "1e999"])("%j is refused with the option's name", (text) => {
-    expect(() => timeFrom(text, "--from")).toThrow(/^--from .*write a time such as --from "1 ns"$/);
-  });
+  test.each(["", "soon", "1 um", "1 ns 2", "nan", "1e999"])(
+    "%j is refused with the option's name",
+    (text) => {
+      expect(() => timeFrom(text, "--from")).toThrow(/^--from .*write a time such as --from "1 ns"$/);
+    },
+  );
 
   test("a window needs its first delay before its last", () => {
     expect(windowFrom("1 ns", "2000 ps")).toEqual({ from: 1, to: 2 });

@@ -1,0 +1,33 @@
+import { SingleBar } from "cli-progress";
+
+/** A bar over the frames. It shows only on a terminal; elsewhere both functions do nothing. */
+export interface Progress {
+  readonly update: (done: number, total: number) => void;
+  readonly end: () => void;
+}
+
+/** @param stream where to draw, or null for no bar at all */
+export function showProgress(stream: NodeJS.WriteStream | null): Progress {
+  if (stream?.isTTY !== true) return { update: () => {}, end: () => {} };
+  const bar = new SingleBar({
+    stream,
+    format: "frames {bar} {value}/{total}",
+    barsize: 30,
+    barCompleteChar: "█",
+    barIncompleteChar: "·",
+    hideCursor: false,
+    clearOnComplete: true,
+    synchronousUpdate: true,
+  });
+  let started = false;
+  return {
+    update(done, total) {
+      if (!started) bar.start(total, 0);
+      started = true;
+      bar.update(done);
+    },
+    end() {
+      if (started) bar.stop();
+    },
+  };
+}
