@@ -1,0 +1,70 @@
+import type { NoiseLaw, Patch } from "./patch.ts";
+import { pixelVariance } from "./patch.ts";
+
+/** Standard deviations, and photons beside them, by which a pixel must stand out. */
+const DEVIATIONS = 5.5;
+const PHOTONS = 5;
+
+/** How far from its mean a pixel may lie: 5.5 standard deviations and 5 photons (times the excess factor). */
+export function tolerance(noise: NoiseLaw, mean: number): number {
+  return DEVIATIONS * Math.sqrt(pixelVariance(noise, mean)) + PHOTONS * noise.excess;
+}
+
+/**
+ * Whether a pixel is hot, dead or struck by a cosmic ray: it differs from *both* what the smooth surroundings expect
+ * and the median of its eight neighbours by more than {@link tolerance}. The second condition spares a spot that the
+ * model describes badly; the photons beside the deviations spare the long tail of the Poisson distribution at small
+ * means (fewer than one false alarm in 10⁷ pixels at any mean).
+ *
+ * @param expected mean of the pixel by the model, photons
+ */
+export function isOutlier(
+  photons: ArrayLike<number>,
+  width: number,
+  height: number,
+  index: number,
+  noise: NoiseLaw,
+  expected: number,
+): boolean {
+  const value = photons[index]!;
+  if (Math.abs(value - expected) <= tolerance(noise, expected)) return false;
+  const around = medianAround(photons, width, height, index);
+  return Math.abs(value - around) > tolerance(noise, Math.max(around, 0));
+}
+
+/** All outliers of a picture, by {@link isOutlier}; indices into `photons`, rising. */
+export function findOutliers(
+  photons: ArrayLike<number>,
+  width: number,
+  height: number,
+  noise: NoiseLaw,
+  expected: (index: number) => number,
+): number[] {
+  const found: number[] = [];
+  for (let i = 0; i < photons.length; i++) {
+    if (isOutlier(photons, width, height, i, noise, expected(i))) found.push(i);
+  }
+  return found;
+}
+
+const neighbours: number[] = [];
+
+function medianAround(photons: ArrayLike<number>, width: number, height: number, index: number): number {
+  const x = index % width;
+  const y = (index - x) / width;
+  neighbours.length = 0;
+  for (let j = Math.max(0, y - 1); j <= Math.min(height - 1, y + 1); j++) {
+    for (let i = Math.max(0, x - 1); i <= Math.min(width - 1, x + 1); i++) {
+      const at = j * width + i;
+      if (at !== index) neighbours.push(photons[at]!);
+    }
+  }
+  neighbours.sort((a, b) => a - b);
+  const middle = neighbours.length >> 1;
+  return neighbours.length % 2 === 1 ? neighbours[middle]! : (neighbours[middle - 1]! + neighbours[middle]!) / 2;
+}
+
+/** Takes outliers of a patch out of the fit. */
+export function excludeFrom(patch: Patch, indices: readonly number[]): void {
+  patch.excluded = [...new Set([...patch.excluded, ...indices])].sort((a, b) => a - b);
+}

@@ -1,0 +1,169 @@
+import { InputFault } from "../stack/fault.ts";
+import type { Stack } from "../stack/stack.ts";
+import { cutPatch, noiseLaw, PhotonReader, rectangleAround, sumFrames } from "./cut.ts";
+import { firstLook } from "./first-look.ts";
+import type { PatchFit } from "./fit-spot.ts";
+import { fitPatch } from "./fit-spot.ts";
+import type { Parameters } from "./kernel.ts";
+import { isOutlier, tolerance } from "./outliers.ts";
+import type { NoiseLaw, Patch, Rectangle } from "./patch.ts";
+import { LAYOUT } from "./pixel-spot.ts";
+
+/** All frames of a stack, cut around the spot and ready to fit. */
+export interface FrameSet {
+  readonly kind: "map" | "trace";
+  /** Side of a pixel, µm. */
+  readonly pixel: number;
+  readonly noise: NoiseLaw;
+  readonly rectangle: Rectangle;
+  readonly patches: readonly Patch[];
+  /** The spot of all frames after the pulse together; photons per frame. Pixels and photons. */
+  readonly typical: Parameters;
+  /** Frames in which the spot reaches the detector's saturation. */
+  readonly saturated: readonly boolean[];
+  /** Frames whose pixels are all the same: nothing was recorded. */
+  readonly empty: readonly boolean[];
+  /** Pixels set aside outside the patch; those inside are listed in each patch. */
+  readonly outerOutliers: Int32Array;
+}
+
+/** How far the patch reaches from the spot, in standard deviations of its widest frame. */
+const REACH = 5;
+
+/**
+ * Finds the spot in the sum of all frames after the pulse, cuts every frame around it and pools the rest.
+ *
+ * All fits start from this sum, not from the frame before: no frame's result depends on its neighbours' luck.
+ *
+ * @param reachFactor widens the patch; for a second try where the fitted spot outgrew it
+ * @throws InputFault where the frames after the pulse hold no spot
+ */
+export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
+  const { kind, width, height } = stack;
+  const { delays } = stack.acquisition.time;
+  const noise = noiseLaw(stack.acquisition.detector);
+  const reader = new PhotonReader(stack);
+  const after = delays.flatMap((delay, index) => (delay >= 0 ? [index] : []));
+  if (after.length < 3) {
+    throw new InputFault(
+      `${stack.source.file}: only ${after.length} of ${stack.frames} frames open at or after the pulse (delay 0); at least 3 are needed. Check time.first and time.step.`,
+      { file: stack.source.file, where: "time.first" },
+    );
+  }
+  const whole = sumFrames(reader, after);
+  const first = firstLook(kind, whole, width, height, sumNoise(noise, after.length));
+  if (first === null) {
+    throw new InputFault(
+      `${stack.source.file}: no spot stands out of the background in the sum of the ${after.length} frames after the pulse. Check that the recording shows the spot and that time.first is right.`,
+      { file: stack.source.file },
+    );
+  }
+  const widest = widestSpot(stack, reader, after, first, noise);
+  const rectangle = patchAround(kind, first.parameters, widest, REACH * reachFactor, width, height);
+
+  const patches: Patch[] = [];
+  const saturated: boolean[] = [];
+  const empty: boolean[] = [];
+  const outerOutliers = new Int32Array(stack.frames);
+  for (let index = 0; index < stack.frames; index++) {
+    const photons = reader.read(index);
+    const patch = cutPatch(photons, width, rectangle);
+    outerOutliers[index] = removeOuterOutliers(photons, width, height, patch, noise);
+    patches.push(patch);
+    empty.push(isFlat(photons));
+    saturated.push(reachesSaturation(stack, patch));
+  }
+  const typical = first.parameters.slice();
+  typical[0]! /= after.length;
+  typical[LAYOUT[kind].background]! /= after.length;
+  return { kind, pixel: stack.acquisition.space.pixel.value, noise, rectangle, patches, typical, saturated, empty, outerOutliers };
+}
+
+/** The noise of a sum of `count` frames: the means add, and so do the read noises' variances. */
+function sumNoise(noise: NoiseLaw, count: number): NoiseLaw {
+  return { excess: noise.excess, floor: noise.floor * count };
+}
+
+/** Standard deviations (x, y) of the widest of the sum's spot and the later frames' spot, pixels. */
+function widestSpot(
+  stack: Stack,
+  reader: PhotonReader,
+  after: readonly number[],
+  first: PatchFit,
+  noise: NoiseLaw,
+): [number, number] {
+  const { kind, width, height } = stack;
+  const late = after.slice(Math.floor(after.length / 2));
+  const picture = sumFrames(reader, late);
+  const patch = cutPatch(picture, width, { x0: 0, y0: 0, width, height });
+  const start = first.parameters.slice();
+  start[0]! *= 0.3;
+  start[LAYOUT[kind].background]! *= late.length / after.length;
+  const fit = fitPatch(kind, patch, start, sumNoise(noise, late.length));
+  const sure = fit.converged && fit.parameters[0]! ** 2 > 100 * fit.covariance[0]!;
+  const candidates = sure ? [first, fit] : [first];
+  const [vx, vy] = kind === "map" ? [3, 5] : [2, 2];
+  const shift = sure ? Math.abs(fit.parameters[1]! - first.parameters[1]!) : 0;
+  const shiftY = sure && kind === "map" ? Math.abs(fit.parameters[2]! - first.parameters[2]!) : 0;
+  return [
+    Math.sqrt(Math.max(...candidates.map((c) => c.parameters[vx!]!))) + (2 * shift) / REACH,
+    Math.sqrt(Math.max(...candidates.map((c) => c.parameters[vy!]!))) + (2 * shiftY) / REACH,
+  ];
+}
+
+function patchAround(
+  kind: "map" | "trace",
+  p: Parameters,
+  sigma: readonly [number, number],
+  reach: number,
+  width: number,
+  height: number,
+): Rectangle {
+  const ry = kind === "map" ? reach * sigma[1] + 2 : 0;
+  return rectangleAround([p[1]!, kind === "map" ? p[2]! : 0], [reach * sigma[0] + 2, ry], width, height);
+}
+
+/** Takes hot and struck pixels out of the pool; the pool's own mean says what a pixel should hold. */
+function removeOuterOutliers(photons: Float64Array, width: number, height: number, patch: Patch, noise: NoiseLaw): number {
+  if (patch.outerCount === 0) return 0;
+  const { x0, y0 } = patch.rectangle;
+  const mean = patch.outerSum / patch.outerCount;
+  const limit = tolerance(noise, mean);
+  let removed = 0;
+  const inspect = (from: number, to: number): void => {
+    for (let i = from; i < to; i++) {
+      if (Math.abs(photons[i]! - mean) <= limit || !isOutlier(photons, width, height, i, noise, mean)) continue;
+      patch.outerCount--;
+      patch.outerSum -= photons[i]!;
+      removed++;
+    }
+  };
+  for (let y = 0; y < height; y++) {
+    const row = y * width;
+    const crosses = y >= y0 && y < y0 + patch.rectangle.height;
+    inspect(row, crosses ? row + x0 : row + width);
+    if (crosses) inspect(row + x0 + patch.rectangle.width, row + width);
+  }
+  return removed;
+}
+
+function isFlat(photons: Float64Array): boolean {
+  const value = photons[0]!;
+  return photons.every((photon) => photon === value);
+}
+
+/** The spot is saturated where a full pixel has a nearly full neighbour; a full pixel alone is a hot one. */
+function reachesSaturation(stack: Stack, patch: Patch): boolean {
+  const { saturation, offset, gain } = stack.acquisition.detector;
+  if (saturation === null) return false;
+  const full = (saturation - offset) / gain;
+  const { width } = patch.rectangle;
+  const { data } = patch;
+  for (let i = 0; i < data.length; i++) {
+    if (data[i]! < full * (1 - 1e-6)) continue;
+    const right = (i + 1) % width === 0 ? 0 : (data[i + 1] ?? 0);
+    const below = data[i + width] ?? 0;
+    if (right > full / 2 || below > full / 2) return true;
+  }
+  return false;
+}

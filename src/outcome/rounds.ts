@@ -1,0 +1,332 @@
+import type { Decays } from "../decay/fit.ts";
+import { fitDecays } from "../decay/fit.ts";
+import type { PatchFit } from "../frame/fit-spot.ts";
+import { fitPatch } from "../frame/fit-spot.ts";
+import type { Evaluation } from "../frame/kernel.ts";
+import { createEvaluation } from "../frame/kernel.ts";
+import { excludeFrom } from "../frame/outliers.ts";
+import { LAYOUT } from "../frame/pixel-spot.ts";
+import type { FrameSet } from "../frame/prepare.ts";
+import type { SmoothModels } from "../frame/references.ts";
+import { referenceAt } from "../frame/references.ts";
+import type { ScoredSpot } from "../frame/score-spot.ts";
+import { scoreSpot } from "../frame/score-spot.ts";
+import type { FrameFlag } from "../frame/spot.ts";
+import { steadyCourse } from "../frame/steady.ts";
+import { findStrikes } from "../frame/strikes.ts";
+import { chiSquareUpperTail } from "../numerics/distributions.ts";
+import { InputFault } from "../stack/fault.ts";
+import type { Stack } from "../stack/stack.ts";
+import type { LawFit, TransportLaw } from "../transport/laws.ts";
+import { fitLaws, preferLaw } from "../transport/laws.ts";
+import type { LineFit } from "../transport/line.ts";
+import { fitLine, meanDiffusion } from "../transport/line.ts";
+import type { Width } from "../transport/width.ts";
+import type { AnalysisOptions } from "./analysis.ts";
+import type { Drift, LightSeries, Reading } from "./read-recording.ts";
+import { responseEnd } from "./response-end.ts";
+import { transmission } from "./transmission.ts";
+
+/** Expected light over its standard deviation from which a frame takes part in the law of spread. */
+const FAINTEST = 2;
+/** From here on a frame is bright enough for a fit of its own, and a fit that fails says something about the frame. */
+const BRIGHT = 8;
+/** A model is acceptable as a smooth reference where chance gives a worse χ² this often. */
+const ACCEPTABLE = 0.01;
+const MOST_ROUNDS = 8;
+/** Rounds end when D moves by less than this share of its uncertainty. */
+const STANDSTILL = 0.01;
+
+/**
+ * Round by round every frame is read against smooth models (law of spread, decay, steady centre and background), the
+ * laws are fitted to what was read, and become the next round's models, until the diffusion coefficient stands still.
+ */
+export class Rounds {
+  private readonly stack: Stack;
+  private readonly frames: FrameSet;
+  private readonly options: AnalysisOptions;
+  private readonly times: Float64Array;
+  private readonly flags: FrameFlag[][];
+  private readonly evaluation: Evaluation;
+  private readonly area: number;
+
+  private own: (PatchFit | null)[];
+  private scored: (ScoredSpot | null)[];
+  private light: LightSeries;
+  private expectedLight: Float64Array;
+  private models: SmoothModels;
+  private drift: Drift = { kind: "constant", speed: [0, 0], u: [0, 0] };
+
+  constructor(stack: Stack, frames: FrameSet, options: AnalysisOptions) {
+    this.stack = stack;
+    this.frames = frames;
+    this.options = options;
+    const { delays, gate } = stack.acquisition.time;
+    this.times = Float64Array.from(delays, (delay) => delay + gate / 2);
+    this.area = frames.pixel ** 2;
+    this.evaluation = createEvaluation(LAYOUT[frames.kind].count);
+    this.flags = delays.map((delay, i) => firstFlags(delay, i, stack, frames, options));
+    this.own = delays.map(() => null);
+    this.scored = delays.map(() => null);
+    this.expectedLight = new Float64Array(delays.length).fill(frames.typical[0]!);
+    this.models = this.typicalModels();
+    this.light = { frames: [], value: new Float64Array(0), sigma: new Float64Array(0), perVariance: [] };
+  }
+
+  read(): Reading {
+    this.scoreAll();
+    const start = this.fitLight();
+    this.smoothLight(start);
+    this.fitOwnSpots();
+    let { line, laws } = this.startLine();
+    let preferredLaw: TransportLaw = "line";
+    let decays = start;
+    let widths: Width[] = [];
+    let before = Number.NaN;
+    let rounds = 0;
+    for (; rounds < MOST_ROUNDS; ) {
+      rounds++;
+      this.models = this.nextModels(line, laws[preferredLaw]);
+      this.scoreAll();
+      this.flagDim();
+      widths = this.readWidths();
+      line = this.fitWidths(widths);
+      laws = fitLaws(widths);
+      preferredLaw = preferLaw(laws);
+      this.steadyModels();
+      decays = this.fitLight();
+      this.smoothLight(decays);
+      const { value, variance } = meanDiffusion(line);
+      if (Math.abs(value - before) < STANDSTILL * Math.sqrt(variance)) break;
+      before = value;
+    }
+    const { stack, frames, own, scored, models, flags, times, light, drift } = this;
+    return { stack, frames, own, scored, models, flags, times, widths, line, laws, preferredLaw, light, decays, drift, rounds };
+  }
+
+  /** The sum of all frames is every frame's first model. */
+  private typicalModels(): SmoothModels {
+    const { typical, kind, pixel } = this.frames;
+    const layout = LAYOUT[kind];
+    const variance = layout.variance.map((at) => typical[at]! * this.area);
+    const centre: [number, number] = [typical[1]! * pixel, kind === "map" ? typical[2]! * pixel : 0];
+    return {
+      light: (i) => this.expectedLight[i]!,
+      variance: () => variance,
+      centre: () => centre,
+      background: () => typical[layout.background]!,
+    };
+  }
+
+  private scoreAll(): void {
+    const { frames, evaluation } = this;
+    for (let i = 0; i < frames.patches.length; i++) {
+      const usable = !frames.empty[i] && !this.flags[i]!.includes("saturated");
+      const reference = referenceAt(frames, this.models, i);
+      this.scored[i] = usable ? scoreSpot(frames.kind, frames.patches[i]!, reference, frames.noise, evaluation) : null;
+    }
+  }
+
+  /** Fits the decay to the light of the frames that may carry it. */
+  private fitLight(): Decays | null {
+    const { acquisition } = this.stack;
+    const count = this.scored.length;
+    const value = new Float64Array(count).fill(Number.NaN);
+    const sigma = new Float64Array(count).fill(Number.NaN);
+    const perVariance: number[][] = [];
+    const used: number[] = [];
+    for (const [i, scored] of this.scored.entries()) {
+      perVariance.push(scored === null ? [] : scored.light.perVariance.map((slope) => slope / this.area));
+      if (scored === null) continue;
+      value[i] = scored.light.value;
+      sigma[i] = Math.sqrt(scored.light.variance);
+      const beforePulse = this.flags[i]!.includes("before-pulse");
+      if ((!beforePulse || acquisition.response !== null) && !this.flags[i]!.includes("fit-failed")) used.push(i);
+    }
+    this.light = { frames: used, value, sigma, perVariance };
+    if (used.length < 3) return null;
+    const pick = (from: ArrayLike<number>): Float64Array => Float64Array.from(used, (i) => from[i]!);
+    const passed = transmission(acquisition, this.frames.kind, this.models, used);
+    return fitDecays({
+      delays: pick(acquisition.time.delays),
+      gate: acquisition.time.gate,
+      response: acquisition.response,
+      period: acquisition.period,
+      light: pick(value),
+      sigma: pick(sigma),
+      transmission: passed,
+      emissionOrder: acquisition.sample.emissionOrder,
+    });
+  }
+
+  /** Next round's expected light: the decay where it describes the light, else a running mean. */
+  private smoothLight(decays: Decays | null): void {
+    const { frames: used, value } = this.light;
+    const fit = decays?.fits[decays.preferred] ?? null;
+    const expected = runningMean(value);
+    if (fit !== null && fit.converged && fit.pValue > 1e-3) {
+      for (const [k, i] of used.entries()) expected[i] = fit.prediction[k]!;
+    }
+    const least = 1e-3 * Math.max(...expected.filter(Number.isFinite), 1e-3);
+    this.expectedLight = expected.map((light) => (light > least ? light : least));
+  }
+
+  /** Maximum likelihood of each bright frame by itself, hot and struck pixels set aside. */
+  private fitOwnSpots(): void {
+    const { kind, patches, noise } = this.frames;
+    for (const [i, patch] of patches.entries()) {
+      const scored = this.scored[i] ?? null;
+      const reference = referenceAt(this.frames, this.models, i);
+      const bright = scored !== null && this.expectedLight[i]! > BRIGHT * Math.sqrt(scored.light.variance);
+      let fit = bright ? fitPatch(kind, patch, reference, noise) : null;
+      for (let attempt = 0; attempt < 2; attempt++) {
+        const strikes = findStrikes(kind, patch, fit?.converged ? fit.parameters : reference, noise);
+        const before = patch.excluded.length;
+        excludeFrom(patch, strikes);
+        if (patch.excluded.length === before) break;
+        if (bright) fit = fitPatch(kind, patch, reference, noise);
+      }
+      this.own[i] = fit?.converged ? fit : null;
+      if (bright && !fit?.converged && this.flags[i]!.length === 0) this.flags[i]!.push("fit-failed");
+      this.options.onProgress?.(i + 1, patches.length);
+    }
+  }
+
+  /** A first line from the bright frames' own widths, weighted by their expected light. */
+  private startLine(): { line: LineFit; laws: Record<TransportLaw, LawFit | null> } {
+    const { typical, kind } = this.frames;
+    const layout = LAYOUT[kind];
+    const widths: Width[] = [];
+    for (const [i, fit] of this.own.entries()) {
+      if (fit === null || this.flags[i]!.length > 0) continue;
+      const variance = layout.variance.map((at) => fit.parameters[at]! * this.area);
+      const scale = (typical[layout.variance[0]]! * this.area) ** 2 / this.expectedLight[i]!;
+      const covariance = kind === "map" ? Float64Array.of(2, 0, 0, 0, 1, 0, 0, 0, 2) : Float64Array.of(2);
+      widths.push({ frame: i, time: this.times[i]!, variance, covariance: covariance.map((c) => c * scale) });
+    }
+    const line = widths.length >= 4 ? fitLine(widths) : null;
+    const none = { line: null, power_law: null, arrest: null, broken_line: null };
+    if (line !== null) return { line, laws: none };
+    const intercept = layout.variance.map((at) => typical[at]! * this.area);
+    const flat: LineFit = {
+      intercept,
+      diffusion: intercept.map(() => 0),
+      covariance: new Float64Array(4 * intercept.length ** 2),
+      chi2: 0,
+      degreesOfFreedom: 0,
+      residuals: [],
+    };
+    return { line: flat, laws: none };
+  }
+
+  private nextModels(line: LineFit, law: LawFit | null): SmoothModels {
+    const { models, times } = this;
+    const first = Math.max(0, ...this.stack.acquisition.time.delays.filter((d) => d >= 0).slice(0, 1));
+    return {
+      ...models,
+      light: (i) => this.expectedLight[i]!,
+      variance: (i) => {
+        const t = Math.max(times[i]!, Math.min(first, 0));
+        const straight = line.intercept.map((value, a) => value + 2 * line.diffusion[a]! * t);
+        if (law === null || law.law === "line") return straight;
+        const shift = law.value(t) - (straight.length === 3 ? (straight[0]! + straight[2]!) / 2 : straight[0]!);
+        return straight.length === 3 ? [straight[0]! + shift, straight[1]!, straight[2]! + shift] : [straight[0]! + shift];
+      },
+    };
+  }
+
+  /** Frames whose expected light drowns in its own noise take no part in the law of spread. */
+  private flagDim(): void {
+    for (const [i, scored] of this.scored.entries()) {
+      const flags: FrameFlag[] = this.flags[i]!.filter((flag) => flag !== "too-dim");
+      if (scored !== null && this.expectedLight[i]! < FAINTEST * Math.sqrt(scored.light.variance)) flags.push("too-dim");
+      this.flags[i] = flags;
+    }
+  }
+
+  private readWidths(): Width[] {
+    const layout = LAYOUT[this.frames.kind];
+    const { count } = layout;
+    const widths: Width[] = [];
+    for (const [i, scored] of this.scored.entries()) {
+      if (scored === null || this.flags[i]!.length > 0) continue;
+      const variance = layout.variance.map((at) => scored.estimate[at]! * this.area);
+      const m = variance.length;
+      const covariance = new Float64Array(m * m);
+      for (const [a, p] of layout.variance.entries()) {
+        for (const [b, q] of layout.variance.entries()) {
+          covariance[a * m + b] = scored.covariance[p * count + q]! * this.area ** 2;
+        }
+      }
+      widths.push({ frame: i, time: this.times[i]!, variance, covariance });
+    }
+    return widths;
+  }
+
+  private fitWidths(widths: readonly Width[]): LineFit {
+    const line = widths.length >= 3 ? fitLine(widths) : null;
+    if (line !== null) return line;
+    const { file } = this.stack.source;
+    const counts = this.flags.filter((flags) => flags.includes("too-dim")).length;
+    throw new InputFault(
+      `${file}: ${widths.length} of ${this.stack.frames} frames are left for the law of spread (${counts} are too dim) and at least 3 are needed; collect more light, widen --from and --to, or check time.first and time.step.`,
+      { file },
+    );
+  }
+
+  /** Centre and background as the frames show them, on the simplest course that fits. */
+  private steadyModels(): void {
+    const { kind, pixel } = this.frames;
+    const layout = LAYOUT[kind];
+    const course = (at: number) => {
+      const values = this.scored.map((s, i) => (s === null || this.flags[i]!.length > 0 ? Number.NaN : s.estimate[at]!));
+      const variances = this.scored.map((s) => (s === null ? 1 : s.covariance[at * layout.count + at]!));
+      return steadyCourse(this.times, values, variances, (chi2, dof) => chiSquareUpperTail(chi2, dof) > ACCEPTABLE);
+    };
+    const centre = layout.position.map((at) => course(at));
+    const background = course(layout.background);
+    const kinds = centre.map((c) => c.kind);
+    this.drift = {
+      kind: kinds.includes("own") ? "own" : kinds.includes("line") ? "line" : "constant",
+      speed: centre.map((c) => c.slope * pixel),
+      u: centre.map((c) => c.slopeU * pixel),
+    };
+    this.models = {
+      ...this.models,
+      centre: (i) => [centre[0]!.at(i) * pixel, (centre[1]?.at(i) ?? 0) * pixel],
+      background: (i) => background.at(i),
+    };
+  }
+}
+
+function firstFlags(delay: number, i: number, stack: Stack, frames: FrameSet, options: AnalysisOptions): FrameFlag[] {
+  const { gate } = stack.acquisition.time;
+  const flags: FrameFlag[] = [];
+  if (delay < 0) flags.push("before-pulse");
+  if (frames.empty[i]) flags.push("empty");
+  if (frames.saturated[i]) flags.push("saturated");
+  const from = options.from ?? responseEnd(stack.acquisition.response);
+  const to = options.to ?? Number.POSITIVE_INFINITY;
+  const slack = 1e-9 * (Math.abs(delay) + gate);
+  if (delay >= 0 && (delay < from - slack || delay > to + slack)) flags.push("outside-window");
+  return flags;
+}
+
+/** Mean over each frame and its two neighbours, the frame itself counted twice. */
+function runningMean(values: Float64Array): Float64Array {
+  return values.map((value, i) => {
+    let sum = 0;
+    let weights = 0;
+    for (const [offset, weight] of [
+      [-1, 1],
+      [0, 2],
+      [1, 1],
+    ] as const) {
+      const neighbour = values[i + offset];
+      if (neighbour === undefined || !Number.isFinite(neighbour)) continue;
+      sum += weight * neighbour;
+      weights += weight;
+    }
+    return weights > 0 ? sum / weights : value;
+  });
+}

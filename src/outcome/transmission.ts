@@ -1,0 +1,32 @@
+import { erf } from "../numerics/distributions.ts";
+import type { SmoothModels } from "../frame/references.ts";
+import type { Acquisition } from "../stack/acquisition.ts";
+
+/**
+ * The share of a frame's light that the number of excitons alone would give, one entry a frame; null where it is all.
+ *
+ * Behind a slit of width w the line of a trace sees erf(w/(2√2·σ_y)) of the spot, with σ_y taken to grow like σ_x.
+ * With light ∝ n² a spot of N pairs shines as ∫n² dA = N²/(4π√|Σ_n|), so light also fades as the spot thins out:
+ * √|Σ(0)|/√|Σ(t)| on a map, and the same with σ_x·σ_y of a trace (derived from the Gaussian's integral).
+ */
+export function transmission(
+  acquisition: Acquisition,
+  kind: "map" | "trace",
+  models: SmoothModels,
+  frames: readonly number[],
+): Float64Array | null {
+  const { slit } = acquisition;
+  const order = acquisition.sample.emissionOrder;
+  const behindSlit = kind === "trace" && slit !== null;
+  if (!behindSlit && order === 1) return null;
+  const spread = (i: number): number => {
+    const variance = models.variance(i);
+    return kind === "map" ? Math.sqrt(Math.max(variance[0]! * variance[2]! - variance[1]! ** 2, 1e-12)) : variance[0]!;
+  };
+  const first = spread(frames[0]!);
+  return Float64Array.from(frames, (i) => {
+    const sigmaY = Math.sqrt(spread(i));
+    const slitShare = behindSlit ? erf(slit.width.value / (2 * Math.SQRT2 * sigmaY)) : 1;
+    return order === 2 ? (slitShare * first) / spread(i) : slitShare;
+  });
+}
