@@ -1,3 +1,4 @@
+import { akaikeWeights, birgeFactor } from "../numerics/model-choice.ts";
 import type { DecayFit, DecayLaw } from "./light.ts";
 
 /** How many times likelier than one exponential a richer law must be, by corrected Akaike weight, to be preferred. */
@@ -36,11 +37,8 @@ export function chooseLaw(fits: Record<DecayLaw, DecayFit | null>): Choice {
   if (usable.length === 0) return { preferred: "exponential", weights };
   const spread = overdispersion(usable);
   const scores = usable.map((fit) => fit.aicc - fit.chi2 + fit.chi2 / spread);
-  const least = Math.min(...scores);
-  const raw = scores.map((score) => Math.exp(-(score - least) / 2));
-  const total = raw.reduce((sum, w) => sum + w, 0);
-  usable.forEach((fit, k) => {
-    weights[fit.law] = raw[k]! / total;
+  akaikeWeights(scores).forEach((weight, k) => {
+    weights[usable[k]!.law] = weight;
   });
   const heaviest = usable.reduce((best, fit) => (weights[fit.law] > weights[best.law] ? fit : best)).law;
   const plainStands =
@@ -50,6 +48,5 @@ export function chooseLaw(fits: Record<DecayLaw, DecayFit | null>): Choice {
 
 function overdispersion(usable: readonly DecayFit[]): number {
   const best = usable.reduce((a, b) => (b.pValue > a.pValue ? b : a));
-  if (best.pValue >= DOUBTFUL || best.degreesOfFreedom < 1) return 1;
-  return Math.max(1, best.chi2 / best.degreesOfFreedom);
+  return birgeFactor(best.chi2, best.degreesOfFreedom, DOUBTFUL) ** 2;
 }

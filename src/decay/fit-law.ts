@@ -1,8 +1,9 @@
+import { chiSquareUpperTail } from "../numerics/distributions.ts";
 import { fitLeastSquares, type LeastSquaresFit } from "../numerics/least-squares.ts";
 import { invertSymmetric } from "../numerics/linear-algebra.ts";
+import { correctedAkaike } from "../numerics/model-choice.ts";
 import type { Law } from "./law.ts";
 import type { DecayFit, DerivedTime, LightData } from "./light.ts";
-import { aicc, chiSquareTail } from "./statistics.ts";
 
 /** What a law's fit needs beside the data: where to begin, how far to go, and when its result is no result. */
 export interface LawTask {
@@ -44,8 +45,8 @@ export function fitLaw(task: LawTask, data: LightData): DecayFit {
     prediction: value,
     chi2: fit.chi2,
     degreesOfFreedom,
-    pValue: chiSquareTail(fit.chi2, degreesOfFreedom),
-    aicc: aicc(fit.chi2, parameters.length, frames),
+    pValue: chiSquareUpperTail(fit.chi2, degreesOfFreedom),
+    aicc: akaike(fit.chi2, parameters.length, frames),
     converged: problem === null,
     reason: problem ?? fit.reason,
     predict: (delays) => predict(task.lawAt(delays), parameters, delays.length),
@@ -54,6 +55,11 @@ export function fitLaw(task: LawTask, data: LightData): DecayFit {
     amplitudeAveraged: derive(law.amplitudeAveraged),
     intensityAveraged: derive(law.intensityAveraged),
   };
+}
+
+/** AICc; of as few points as one exponential can be fitted to (3), where it is infinite, the uncorrected form. */
+function akaike(chi2: number, k: number, n: number): number {
+  return n > k + 1 ? correctedAkaike(chi2, k, n) : chi2 + 2 * k;
 }
 
 function minimise(

@@ -6,13 +6,14 @@ import type { Instrument } from "./instrument.ts";
 import { instrument as makeInstrument } from "./instrument.ts";
 import type { Law } from "./law.ts";
 import type { DecayFit, DecayLaw, LightData } from "./light.ts";
+import { richerLawCouldPay } from "./richer.ts";
 import { bestStart, exponentialStarts, type LifetimeRange, lifetimeRange } from "./starts.ts";
 import { stretchedLaw } from "./stretched.ts";
 import { twoExponentialsLaw } from "./two-exponentials.ts";
 
 export type { DecayFit, DecayLaw, DerivedTime, LightData } from "./light.ts";
 
-/** All four laws fitted, null where there are too few frames for one, and the law to believe. */
+/** All four laws fitted, null where a law was not worth fitting (richer.ts) or there are too few frames, and the law to believe. */
 export interface Decays {
   readonly fits: Record<DecayLaw, DecayFit | null>;
   readonly preferred: DecayLaw;
@@ -46,12 +47,14 @@ export function fitDecays(data: LightData): Decays {
     const plain = fitExponential(make(exponentialLaw), data, starts.one, range);
     const tau = plain.parameters[1]!;
     fits.exponential = plain;
+    const richer = richerLawCouldPay(data, instrument, plain, range);
     // AICc needs at least two frames more than parameters.
-    if (frames >= 5) {
+    if (richer && frames >= 5) {
       fits.stretched = fitStretched(make(stretchedLaw), data, tau, range);
       fits.annihilation = fitAnnihilation(make(annihilationLaw), data, tau, range);
     }
-    if (frames >= 6) fits.two_exponentials = fitTwo(make(twoExponentialsLaw), data, starts.two, range);
+    if (richer && frames >= 6)
+      fits.two_exponentials = fitTwo(make(twoExponentialsLaw), data, starts.two, range);
   }
   return { fits, ...chooseLaw(fits) };
 }

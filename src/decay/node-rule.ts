@@ -51,13 +51,16 @@ function responseRule(timing: Timing, response: Response): NodeRule {
   const { delays, gate, period } = timing;
   const shape = response.kind === "gaussian" ? gaussianShape(response.fwhm) : sampledShape(response);
   const build = new Builder(delays.length);
-  const reach = (i: number): [number, number] => [delays[i]! - shape.to, delays[i]! + gate - shape.from];
-  const end = period ?? Math.max(0, ...Array.from(delays, (_, i) => reach(i)[1]));
+  const first = Float64Array.from(delays, (t) => t - shape.to);
+  const last = Float64Array.from(delays, (t) => t + gate - shape.from);
+  const end = period ?? Math.max(0, ...last);
   for (const [a, b] of responsePanels(timing, shape, end)) {
     for (const [u, weight] of panel(a, b)) {
       const node = build.node(u);
       for (let i = 0; i < delays.length; i++) {
-        const [from, to] = reach(i);
+        const from = first[i]!;
+        const to = last[i]!;
+        if (period === null && (u < from || u > to)) continue;
         const turns = period === null ? 0 : Math.ceil((from - u) / period);
         let kernel = 0;
         for (let v = u + turns * (period ?? 0); v <= to; v += period ?? Number.POSITIVE_INFINITY) {
@@ -103,11 +106,10 @@ function graded(a: number, b: number): [number, number][] {
   return out;
 }
 
-const MAPPED = 6;
-
 /** Nodes and weights on a panel. One that starts at the pulse is mapped by u = b·x³, which tames u^β. */
 function panel(a: number, b: number): [number, number][] {
-  const { points, weights } = gaussLegendre(MAPPED);
+  // Over a tenth of its age or less a light hardly bends.
+  const { points, weights } = gaussLegendre(b - a < 0.1 * a ? 4 : 6);
   if (a > 0) return points.map((x, k) => [a + (b - a) * x, (b - a) * weights[k]!]);
   return points.map((x, k) => [b * x ** 3, 3 * b * x * x * weights[k]!]);
 }
@@ -115,10 +117,12 @@ function panel(a: number, b: number): [number, number][] {
 /** Collects the entries of a rule, frame by frame or node by node. */
 class Builder {
   private readonly nodes: number[] = [];
-  private readonly entries: [node: number, weight: number][][];
+  private readonly columns: number[][];
+  private readonly weights: number[][];
 
   constructor(frames: number) {
-    this.entries = Array.from({ length: frames }, () => []);
+    this.columns = Array.from({ length: frames }, () => []);
+    this.weights = Array.from({ length: frames }, () => []);
   }
 
   node(u: number): number {
@@ -126,20 +130,20 @@ class Builder {
   }
 
   add(frame: number, node: number, weight: number) {
-    this.entries[frame]!.push([node, weight]);
+    this.columns[frame]!.push(node);
+    this.weights[frame]!.push(weight);
   }
 
   finish(): NodeRule {
-    const rows = new Int32Array(this.entries.length + 1);
-    this.entries.forEach((row, i) => {
+    const rows = new Int32Array(this.columns.length + 1);
+    this.columns.forEach((row, i) => {
       rows[i + 1] = rows[i]! + row.length;
     });
-    const flat = this.entries.flat();
     return {
       nodes: Float64Array.from(this.nodes),
       rows,
-      columns: Int32Array.from(flat, ([node]) => node),
-      weights: Float64Array.from(flat, ([, weight]) => weight),
+      columns: Int32Array.from(this.columns.flat()),
+      weights: Float64Array.from(this.weights.flat()),
     };
   }
 }

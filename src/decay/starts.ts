@@ -17,13 +17,20 @@ export function lifetimeRange({ delays, gate }: LightData): LifetimeRange {
   return { shortest: finest / 20, longest: 1000 * span };
 }
 
+const GRID = 18;
+
+/** Lifetimes that cover what a recording can tell, evenly in their logarithm. */
+export function lifetimeGrid({ shortest, longest }: LifetimeRange): number[] {
+  const low = 4 * shortest;
+  const high = longest / 100;
+  return Array.from({ length: GRID }, (_, j) => low * (high / low) ** (j / (GRID - 1)));
+}
+
 /** Where the fits of one and of two exponentials begin. */
 export interface ExponentialStarts {
   readonly one: number[];
   readonly two: number[];
 }
-
-const GRID = 18;
 
 /**
  * Starting values by linear regression on a grid of lifetimes: one exponential by the best of them, two by the best
@@ -35,9 +42,7 @@ export function exponentialStarts(
   instrument: Instrument,
   range: LifetimeRange,
 ): ExponentialStarts {
-  const low = 4 * range.shortest;
-  const high = range.longest / 100;
-  const taus = Array.from({ length: GRID }, (_, j) => low * (high / low) ** (j / (GRID - 1)));
+  const taus = lifetimeGrid(range);
   const order = data.emissionOrder;
   const slope = new Float64Array(instrument.frames);
   const columns = taus.map((tau) => {
@@ -50,9 +55,10 @@ export function exponentialStarts(
   const b = columns.map((column) => dot(column, y));
   const g = columns.map((column) => dot(column, column));
 
-  let one = { fall: Number.NEGATIVE_INFINITY, start: [1, high] };
+  let one = { fall: Number.NEGATIVE_INFINITY, start: [1, taus[GRID - 1]!] };
   let two = { fall: Number.NEGATIVE_INFINITY, start: [] as number[] };
   for (let j = 0; j < GRID; j++) {
+    if (!(g[j]! > 0)) continue;
     // A negative amplitude is no start, but where all are negative the least bad must do.
     const fall = (b[j]! * Math.abs(b[j]!)) / g[j]!;
     if (fall > one.fall) one = { fall, start: [b[j]! / g[j]!, taus[j]!] };

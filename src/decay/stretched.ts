@@ -1,4 +1,4 @@
-import { gammafn } from "./gamma.ts";
+import { gamma } from "../numerics/distributions.ts";
 import { gaussLegendre } from "./gauss-legendre.ts";
 import type { Instrument } from "./instrument.ts";
 import type { Law } from "./law.ts";
@@ -20,8 +20,8 @@ export function stretchedLaw(instrument: Instrument, order: 1 | 2): Law {
     headline: null,
     evaluate: evaluate(instrument, order),
     survival: (p, t) => (t > 0 ? Math.exp(-((t / p[1]!) ** p[2]!)) : 1),
-    amplitudeAveraged: (p) => (p[1]! / p[2]!) * gammafn(1 / p[2]!),
-    intensityAveraged: (p) => (p[1]! * gammafn(2 / p[2]!)) / gammafn(1 / p[2]!),
+    amplitudeAveraged: (p) => (p[1]! / p[2]!) * gamma(1 / p[2]!),
+    intensityAveraged: (p) => (p[1]! * gamma(2 / p[2]!)) / gamma(1 / p[2]!),
   };
 }
 
