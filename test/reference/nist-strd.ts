@@ -45,6 +45,46 @@ export function readNonlinear(name: string): NonlinearSet {
   };
 }
 
+export interface LinearSet {
+  readonly y: number[];
+  readonly x: number[][];
+  readonly certified: number[];
+  readonly certifiedDeviations: number[];
+  readonly residualDeviation: number;
+}
+
+export function readLinear(name: string): LinearSet {
+  const lines = linesOf(`linear/${name}.dat`);
+  const table = lines.slice(0, 60).flatMap((line) => {
+    const match = /^\s*B\d+\s+(\S+)\s+(\S+)\s*$/.exec(line);
+    return match ? [match.slice(1).map(Number)] : [];
+  });
+  const deviation = lines
+    .map((line) => /^\s*Standard Deviation\s+(\S+)\s*$/.exec(line))
+    .find((match) => match);
+  const rows = rowsFrom(lines, 60);
+  return {
+    y: rows.map((row) => row[0]!),
+    x: rows[0]!.slice(1).map((_, c) => rows.map((row) => row[c + 1]!)),
+    certified: table.map((row) => row[0]!),
+    certifiedDeviations: table.map((row) => row[1]!),
+    residualDeviation: Number(deviation![1]),
+  };
+}
+
+export function readUnivariate(name: string): { y: number[]; mean: number; standardDeviation: number } {
+  const lines = linesOf(`univariate/${name}.dat`);
+  const certified = (start: string) => {
+    const line = lines.find((text) => text.startsWith(start) && /:\s+[-\d.]+/.test(text))!;
+    return Number(/:\s+([-\d.]+)/.exec(line)![1]);
+  };
+  return {
+    y: rowsFrom(lines, lines.findIndex((line) => /^-{5}/.test(line)) + 1).map((row) => row[0]!),
+    mean: certified("Sample Mean"),
+    standardDeviation: certified("Sample Standard Deviation"),
+  };
+}
+
 /** Digits to which a value agrees with the certified one: −log₁₀ of the relative error, at most 11. */
 export function digitsOf(value: number, certified: number): number {
   const error = Math.abs(value - certified) / Math.abs(certified);
