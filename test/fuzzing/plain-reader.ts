@@ -59,25 +59,27 @@ function readPage(bytes: Buffer, little: boolean, tags: ReadonlyMap<number, numb
   const one = (tag: number, otherwise?: number) => tags.get(tag)?.[0] ?? otherwise ?? Number.NaN;
   const [width, height, bits, format] = [one(256), one(257), one(258, 1), one(339, 1)];
   const plain =
-    one(277, 1) === 1 && one(262) <= 1 && one(266, 1) === 1 && one(317, 1) === 1 && !tags.has(322);
+    one(277, 1) === 1 && one(262, 1) === 1 && one(266, 1) === 1 && one(317, 1) === 1 && !tags.has(322);
   if (!plain || ![8, 16, 32].includes(bits) || !(width > 0 && height > 0)) return null;
   const compression = one(259, 1);
   if (compression !== 1 && compression !== 8) return null;
-  const lengths = tags.get(279);
+  // a plain file's strip lengths follow from its size, so a lost table of lengths loses nothing
+  const rows = Math.min(one(278, height), height);
+  const plainLength = (i: number) => Math.min(rows, height - i * rows) * width * (bits / 8);
+  const lengths = tags.get(279) ?? [];
   const strips = tags.get(273)?.map((offset, i) => {
-    const length = lengths?.[i];
+    const length = lengths.length === 0 && compression === 1 ? plainLength(i) : lengths[i];
     if (length === undefined || offset + length > bytes.length) throw new RangeError("cut");
     const raw = bytes.subarray(offset, offset + length);
     return compression === 8 ? inflateSync(raw) : raw;
   });
   if (strips === undefined) return null;
 
-  const rowsPerStrip = Math.min(one(278, height), height);
   const [rowBytes, size] = [(width * bits) / 8, bits / 8];
   let sum = 0;
   for (let row = 0; row < height; row++) {
-    const strip = strips[Math.floor(row / rowsPerStrip)];
-    const start = (row % rowsPerStrip) * rowBytes;
+    const strip = strips[Math.floor(row / rows)];
+    const start = (row % rows) * rowBytes;
     if (strip === undefined) return null;
     for (let at = start; at < start + rowBytes; at += size) sum += value(strip, at, bits, format, little);
   }
