@@ -99,7 +99,8 @@ function readFormat(source: ByteSource): Format & { first: number } {
       file: source.name,
     });
   }
-  const head = source.size >= 8 ? source.read(0, Math.min(16, source.size)).slice() : new Uint8Array(8);
+  const head =
+    source.size >= 8 ? new Uint8Array(source.read(0, Math.min(16, source.size))) : new Uint8Array(8);
   const littleEndian = head[0] === 0x49 && head[1] === 0x49;
   const bigEndian = head[0] === 0x4d && head[1] === 0x4d;
   const view = new DataView(head.buffer);
@@ -157,7 +158,7 @@ function view(source: ByteSource, offset: number, length: number, what: string):
     throw damaged(source, `${what} lies beyond the end of the file (${source.size} bytes)`);
   }
   // Copied: the source may use its buffer again for the next read.
-  return new DataView(source.read(offset, length).slice().buffer);
+  return new DataView(new Uint8Array(source.read(offset, length)).buffer);
 }
 
 function toNumber(block: DataView, at: number, bytes: number, littleEndian: boolean): number {

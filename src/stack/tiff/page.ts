@@ -170,14 +170,24 @@ function withCheckedSegments(source: ByteSource, page: Page, number: number): Pa
 
 function checkSegment(source: ByteSource, page: Page, index: number, stored: number, number: number): void {
   const offset = page.offsets[index]!;
-  const unpacked = unpackedBytes(page, index);
-  const plain = page.compression === COMPRESSION.none;
   if (!(offset >= 8 && stored > 0 && offset + stored <= source.size)) {
     throw damaged(source, `page ${number} needs bytes ${offset} to ${offset + stored} of ${source.size}`);
   }
-  if (plain ? stored < unpacked : stored * TIGHTEST < unpacked || stored > 2 * unpacked + 1024) {
+  const unpacked = unpackedBytes(page, index);
+  if (!isPlausible(page, stored, unpacked)) {
     throw damaged(source, `page ${number} keeps ${unpacked} bytes of pixels in ${stored} bytes`);
   }
+}
+
+/**
+ * Plain pixels may be padded, up to a whole strip at the end of a page, but bytes by half more than fit mean that the
+ * page's size or sample type is wrong. Packed pixels may be somewhat larger than plain ones.
+ */
+function isPlausible(page: Page, stored: number, unpacked: number): boolean {
+  if (page.compression !== COMPRESSION.none)
+    return stored * TIGHTEST >= unpacked && stored <= 2 * unpacked + 1024;
+  const whole = page.segmentWidth * page.segmentHeight * page.sample.bytes;
+  return stored >= unpacked && stored < 1.5 * whole;
 }
 
 function first(directory: Directory, tag: number, otherwise: number): number {

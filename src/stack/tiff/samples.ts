@@ -26,7 +26,7 @@ const INTEGERS = {
 export function asSamples(bytes: Uint8Array, type: SampleType, littleEndian: boolean): Samples {
   const ordered =
     littleEndian === HOST_LITTLE_ENDIAN || type.bytes === 1 ? bytes : swapped(bytes, type.bytes);
-  const aligned = ordered.byteOffset % type.bytes === 0 ? ordered : ordered.slice();
+  const aligned = ordered.byteOffset % type.bytes === 0 ? ordered : new Uint8Array(ordered);
   const count = bytes.length / type.bytes;
   if (type.kind === "float") {
     const Floats = type.bytes === 4 ? Float32Array : Float64Array;
@@ -59,7 +59,7 @@ export function unpredicted(
   if (predictor === 3) return asSamples(undoFloatPredictor(bytes, type.bytes, width), type, false);
   if (predictor !== 2) return asSamples(bytes, type, littleEndian);
   // The differences wrap around at the sample's width whatever its kind, so they are summed as unsigned integers.
-  const sums = asSamples(bytes.slice(), { kind: "uint", bytes: type.bytes }, littleEndian);
+  const sums = asSamples(new Uint8Array(bytes), { kind: "uint", bytes: type.bytes }, littleEndian);
   if (sums instanceof BigUint64Array) accumulate(sums, width);
   else accumulate(sums as Uint32Array, width);
   return asSamples(new Uint8Array(sums.buffer, sums.byteOffset, sums.byteLength), type, HOST_LITTLE_ENDIAN);
