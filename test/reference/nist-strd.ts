@@ -45,6 +45,17 @@ export function readNonlinear(name: string): NonlinearSet {
   };
 }
 
+/** The response and predictor of a one-predictor nonlinear set as the file prints them, for exact arithmetic. */
+export function readDecimals(name: string): { y: string; x: string }[] {
+  return linesOf(`nonlinear/${name}.dat`)
+    .slice(60)
+    .filter((line) => line.trim() !== "")
+    .map((line) => {
+      const [y, x] = line.trim().split(/\s+/);
+      return { y: y!, x: x! };
+    });
+}
+
 export interface LinearSet {
   readonly y: number[];
   readonly x: number[][];
