@@ -10,7 +10,7 @@ export interface SettingOptions {
   readonly step?: string;
   readonly gate?: string;
   readonly temperature?: string;
-  readonly set: Readonly<Record<string, string>>;
+  readonly set?: Readonly<Record<string, string>>;
 }
 
 const KEY_OF_OPTION = {
@@ -39,7 +39,10 @@ export function openOptions(options: SettingOptions): OpenOptions {
 }
 
 /** Collects one `--set KEY=VALUE`. */
-export function addSetting(text: string, soFar: Readonly<Record<string, string>>): Record<string, string> {
+export function addSetting(
+  text: string,
+  soFar: Readonly<Record<string, string>> = {},
+): Record<string, string> {
   const at = text.indexOf("=");
   const key = text.slice(0, at).trim();
   if (at < 1 || key === "")
