@@ -1,6 +1,6 @@
 import { parse, TomlError } from "smol-toml";
 import { InputFault } from "./fault.ts";
-import type { SettingText } from "./settings.ts";
+import { printable, type SettingText } from "./settings.ts";
 
 /**
  * Flattens the text of an acquisition file to dotted keys; what the keys mean is settled later.
@@ -10,16 +10,10 @@ import type { SettingText } from "./settings.ts";
  *   key takes
  */
 export function readAcquisitionText(text: string, name: string): Record<string, SettingText> {
-  const settings: Record<string, SettingText> = {};
-  for (const [key, value] of Object.entries(parseToml(text, name))) {
-    if (isTable(value)) {
-      for (const [inner, each] of Object.entries(value))
-        settings[`${key}.${inner}`] = plain(each, name, `${key}.${inner}`);
-    } else {
-      settings[key] = plain(value, name, key);
-    }
-  }
-  return settings;
+  const entries = Object.entries(parseToml(text, name)).flatMap(([key, value]): [string, unknown][] =>
+    isTable(value) ? Object.entries(value).map(([inner, each]) => [`${key}.${inner}`, each]) : [[key, value]],
+  );
+  return Object.fromEntries(entries.map(([key, value]) => [key, plain(value, name, key)]));
 }
 
 function parseToml(text: string, name: string): Record<string, unknown> {
@@ -46,7 +40,7 @@ function plain(value: unknown, name: string, key: string): SettingText {
   if (Array.isArray(value) && value.every((each) => typeof each === "number" || typeof each === "string")) {
     return value;
   }
-  throw new InputFault(`${name}: ${key} holds a table or a nested list; write one value`, {
+  throw new InputFault(`${name}: ${printable(key)} holds a table or a nested list; write one value`, {
     file: name,
     where: key,
   });

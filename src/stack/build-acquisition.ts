@@ -81,11 +81,10 @@ function sampleOf(settings: WrittenSettings): Acquisition["sample"] {
 }
 
 function conditionsOf(settings: WrittenSettings): Record<string, Condition> {
-  const conditions: Record<string, Condition> = {};
-  for (const [key, { value }] of settings.values) {
-    if (key.startsWith("conditions.")) conditions[key.slice("conditions.".length)] = readCondition(value);
-  }
-  return conditions;
+  const conditions = [...settings.values].filter(([key]) => key.startsWith("conditions."));
+  return Object.fromEntries(
+    conditions.map(([key, { value }]) => [key.slice("conditions.".length), readCondition(value)]),
+  );
 }
 
 /** What is said of a setting that nobody wrote, where the default bears on the result. */

@@ -35,6 +35,9 @@ export function delaysOf(settings: WrittenSettings, frames: number): WrittenDela
   }
   // Counted from the pulse, not summed up, so that rounding does not pile up.
   const delays = Array.from({ length: frames }, (_, i) => (first?.value ?? 0) + i * step.value);
+  if (firstFall(delays) > 0 || !Number.isFinite(delays.at(-1))) {
+    throw valueFault(settings, "time.step", "gives delays too close or too large to tell apart");
+  }
   return { delays, relativeU: relativeU ?? step.u / step.value };
 }
 
@@ -49,7 +52,7 @@ function fromList(settings: WrittenSettings, listed: readonly number[], frames: 
   if (listed.length !== frames) {
     throw valueFault(settings, "time.delays", `lists ${listed.length} delays for ${frames} frames`);
   }
-  const fall = listed.findIndex((delay, i) => i > 0 && !(delay > listed[i - 1]!));
+  const fall = firstFall(listed);
   if (fall > 0) {
     const wrong = listed[fall] === listed[fall - 1] ? "repeats" : "does not rise";
     throw valueFault(
@@ -58,7 +61,14 @@ function fromList(settings: WrittenSettings, listed: readonly number[], frames: 
       `${wrong} at frame ${fall + 1} (${listed[fall]} after ${listed[fall - 1]})`,
     );
   }
-  return listed.map((delay) => delay * factor);
+  const delays = listed.map((delay) => delay * factor);
+  if (!delays.every(Number.isFinite)) throw valueFault(settings, "time.delays", "holds too large a number");
+  return delays;
+}
+
+/** The first place whose delay is not above the one before, or −1. */
+function firstFall(delays: readonly number[]): number {
+  return delays.findIndex((delay, i) => i > 0 && !(delay > delays[i - 1]!));
 }
 
 /** @throws InputFault when there are fewer frames than a fit needs */

@@ -75,7 +75,7 @@ function checkKey(name: string, key: string): void {
   }
   const meant = nearestKey(key);
   throw new InputFault(
-    `${name}: ${key} is not a known key; ${meant === null ? "take it out" : `did you mean ${meant}?`}`,
+    `${name}: ${printable(key)} is not a known key; ${meant === null ? "take it out" : `did you mean ${meant}?`}`,
     { file: name, where: key },
   );
 }
@@ -107,4 +107,9 @@ function refuseBothWays(name: string, keys: readonly string[]): void {
 
 function excludedBy(key: string): readonly string[] {
   return ALTERNATIVES.flatMap(([one, other]) => (one.includes(key) ? other : other.includes(key) ? one : []));
+}
+
+/** Text within a message of one line: control characters as JSON writes them. */
+export function printable(text: string): string {
+  return JSON.stringify(text).slice(1, -1);
 }

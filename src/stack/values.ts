@@ -2,7 +2,7 @@ import type { Measured } from "./acquisition.ts";
 import { KEY_RULES, type KeyRule } from "./acquisition-keys.ts";
 import { InputFault } from "./fault.ts";
 import { parseQuantity, QuantityFault } from "./quantity.ts";
-import type { WrittenSetting, WrittenSettings } from "./settings.ts";
+import { printable, type WrittenSetting, type WrittenSettings } from "./settings.ts";
 import { KINDS } from "./units.ts";
 
 type QuantityRule = Extract<KeyRule, { form: "quantity" }>;
@@ -68,7 +68,7 @@ export function numbersOf(settings: WrittenSettings, key: string): number[] | nu
       throw valueFault(
         settings,
         key,
-        `holds "${String(each).trim()}" in place ${i + 1}, which is not a number`,
+        `holds ${JSON.stringify(String(each).trim())} in place ${i + 1}, which is not a number`,
       );
     }
     return number;
@@ -93,9 +93,8 @@ export function originName(settings: WrittenSettings, setting: WrittenSetting | 
 
 function showValue(setting: WrittenSetting | undefined): string {
   const value = setting?.value;
-  if (typeof value === "string") return `"${value}"`;
+  if (typeof value === "string") return JSON.stringify(value);
   if (typeof value === "number") return String(value);
-  return value === undefined
-    ? "nothing"
-    : `[${value.slice(0, 4).join(", ")}${value.length > 4 ? ", …" : ""}]`;
+  if (value === undefined) return "nothing";
+  return printable(`[${value.slice(0, 4).join(", ")}${value.length > 4 ? ", …" : ""}]`);
 }

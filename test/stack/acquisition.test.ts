@@ -331,6 +331,23 @@ describe("a fault in the acquisition file names file, key and mend", () => {
     expect(fault.where).toBe(where);
   });
 
+  it("a key or value with line breaks or of an inherited name, still in one line", () => {
+    for (const text of ['"pix\\nel" = 1', "__proto__ = 1", "constructor = 1", '[space]\npixel = "x\\num"']) {
+      expect(faultOf(() => acquisition(text)).message).toMatch(/^scan\.toml: [^\n]+$/);
+    }
+    expect(Object.keys(acquisition(`${SPACE}${TIME}[conditions]\n__proto__ = 1`).conditions)).toEqual([
+      "__proto__",
+    ]);
+  });
+
+  it("a step that first swallows, or that runs to infinity", () => {
+    for (const time of ['first = "1e12 s"\nstep = "1 fs"', 'step = "1e299 s"']) {
+      expect(faultOf(() => acquisition(`${SPACE}[time]\n${time}`)).message).toMatch(
+        /delays too close or too large/,
+      );
+    }
+  });
+
   it("a syntax error, with its line", () => {
     const fault = faultOf(() => acquisition(`${SPACE}[time]\nstep = 0.25 ns\n`));
     expect(fault.message).toMatch(/^scan\.toml, line 4: not valid TOML \(.+\); write key = "value"/);

@@ -4,6 +4,7 @@ import { describe, expect, it } from "vitest";
 import { InputFault } from "../../src/stack/fault.ts";
 import { inspectStack } from "../../src/stack/inspect.ts";
 import { openStack } from "../../src/stack/open.ts";
+import { readResponse } from "../../src/stack/response-file.ts";
 import { writeTiff } from "../../src/stack/tiff/write.ts";
 import { counts, floats, LEAST_TOML, plainRecording, testFolder } from "./folder.ts";
 
@@ -85,6 +86,15 @@ describe("opening a recording", () => {
     folder.put("fast.toml", `${LEAST_TOML}[instrument]\nresponse = "irf.csv"\n`);
     const { acquisition } = await openStack(file);
     expect(acquisition.response).toEqual({ kind: "sampled", delays: [-0.1, 0, 0.1], counts: [0, 100, 20] });
+  });
+
+  it("takes the unit of the delays from the heading of the response", () => {
+    const body = "-100,0\n0,100\n100,20\n";
+    for (const heading of ["delay (ps),counts", "time/ps,counts", "# made on Monday\nt_ps,counts"]) {
+      const response = readResponse(`${heading}\n${body}`, "irf.csv");
+      expect(response).toEqual({ kind: "sampled", delays: [-0.1, 0, 0.1], counts: [0, 100, 20] });
+    }
+    expect(readResponse(`delay,counts\n${body}`, "irf.csv")).toMatchObject({ delays: [-100, 0, 100] });
   });
 
   it("lets settings on the command line stand in for the whole acquisition file", async () => {
@@ -237,6 +247,8 @@ describe("bad input is refused in one sentence with file, cause and mend", () =>
       ["delay,counts\n0,1\n0.1,x\n", /line 3, does not hold two numbers/],
       ["0,1\n0.1,2\n0.1,3\n", /line 3, has a delay that does not rise/],
       ["0,1\n0.1,-2\n0.2,3\n", /line 2, has counts below zero/],
+      ["0;1\n0,1;2\n0,2;3\n", /line 2, does not hold two numbers/],
+      ["0,1\n0,1,2\n0,2,3\n", /line 2, does not hold two numbers/],
       ["delay,counts\n", /holds no instrument response/],
     ] as const) {
       const response = folder.put("bad.csv", text);

@@ -86,10 +86,13 @@ describe("a TIFF that is not what it says, or says what is not read", () => {
     expect(await messageOf(bytes)).toMatch(/directories run in a circle after page 4/);
   });
 
-  it("passes over a page that is marked as a preview", async () => {
-    const bytes = withTag(plainRecording(), 1, 254, 1);
-    const pictures = await openTiff(memorySource("scan.tif", bytes));
-    expect(pictures.count).toBe(3);
+  it("passes over a page that is marked as a smaller version and is smaller, and reads one that is not", async () => {
+    const pictures = [0, 1, 2].map((k) => counts(8, 6, (x, y) => 10 * k + x + 2 * y));
+    const preview = counts(4, 3, (x) => x);
+    const withPreview = withTag(writeTiff([pictures[0]!, preview, ...pictures.slice(1)]), 1, 254, 1);
+    expect((await openTiff(memorySource("scan.tif", withPreview))).count).toBe(3);
+    const onlyMarked = withTag(writeTiff(pictures), 1, 254, 1);
+    expect((await openTiff(memorySource("scan.tif", onlyMarked))).count).toBe(3);
   });
 
   it("every cut of a plain and of a packed recording", async () => {

@@ -32,10 +32,19 @@ const MOST_PIXELS = 2 ** 26;
 /** No codec here packs tighter: LZW reaches about 1365 : 1, deflate 1032 : 1 (zlib's own documentation), PackBits 64 : 1. */
 const TIGHTEST = 1400;
 
-/** Pages that only preview another one, or mask it: bits of NewSubfileType, or the older SubfileType 2. */
-export function isPreview(directory: Directory): boolean {
-  const bits = first(directory, TAG.newSubfileType, 0);
-  return (bits & 0b101) !== 0 || first(directory, TAG.subfileType, 1) === 2;
+/**
+ * The directories that hold frames: those marked as masks, or as a smaller version of another page (NewSubfileType,
+ * or SubfileType 2 of older files), are passed over. A page marked as smaller that is not smaller is a frame.
+ */
+export function frameDirectories(list: readonly Directory[]): readonly Directory[] {
+  const size = (directory: Directory) =>
+    `${first(directory, TAG.width, 0)}×${first(directory, TAG.height, 0)}`;
+  const isMask = (directory: Directory) => (first(directory, TAG.newSubfileType, 0) & 4) !== 0;
+  const isSmaller = (directory: Directory) =>
+    (first(directory, TAG.newSubfileType, 0) & 1) !== 0 || first(directory, TAG.subfileType, 1) === 2;
+  const pictures = list.filter((directory) => !isMask(directory));
+  const whole = pictures.find((directory) => !isSmaller(directory)) ?? pictures[0];
+  return pictures.filter((directory) => !isSmaller(directory) || size(directory) === size(whole!));
 }
 
 /**

@@ -2,7 +2,7 @@ import { InputFault } from "../fault.ts";
 import { COMPRESSION, type Decompress, decompressorFor } from "./codecs.ts";
 import { declaredImages } from "./description.ts";
 import { damaged, readDirectories } from "./directory.ts";
-import { isPreview, type Page, readPage, unpackedBytes, usesPredictor } from "./page.ts";
+import { frameDirectories, type Page, readPage, unpackedBytes, usesPredictor } from "./page.ts";
 import { asSamples, copySamples, unpredicted } from "./samples.ts";
 import type { ByteSource } from "./source.ts";
 
@@ -27,10 +27,9 @@ export interface Pictures {
  */
 export async function openTiff(source: ByteSource, inflate?: Decompress): Promise<Pictures> {
   const { littleEndian, list } = readDirectories(source);
-  const whole = list.filter((directory) => !isPreview(directory));
-  const pages = whole.map((directory, index) => readPage(source, directory, index + 1));
+  const pages = frameDirectories(list).map((directory, index) => readPage(source, directory, index + 1));
   const [firstPage] = pages;
-  if (firstPage === undefined) throw damaged(source, "it holds previews only");
+  if (firstPage === undefined) throw damaged(source, "it holds masks only");
   checkAlike(source, pages);
   const all = withContiguous(source, pages);
   const unpack = await decompressors(all, inflate);
