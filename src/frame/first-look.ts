@@ -1,9 +1,9 @@
-import type { Parameters } from "./kernel.ts";
-import type { NoiseLaw } from "./patch.ts";
+import { cutPatch } from "./cut.ts";
 import type { PatchFit } from "./fit-spot.ts";
 import { fitPatch } from "./fit-spot.ts";
-import { cutPatch } from "./cut.ts";
+import type { Parameters } from "./kernel.ts";
 import { excludeFrom, findOutliers } from "./outliers.ts";
+import type { NoiseLaw } from "./patch.ts";
 
 /**
  * Finds the one spot of a bright picture (the sum of many frames): a maximum of the smoothed picture, its width from
@@ -27,7 +27,10 @@ export function firstLook(
   if (!(peak > 0)) return null;
   const variance = varianceFromHalfArea(kind, smooth, background + peak / 2);
   const patch = cutPatch(picture, width, { x0: 0, y0: 0, width, height });
-  excludeFrom(patch, findOutliers(picture, width, height, noise, (i) => smooth[i]!));
+  excludeFrom(
+    patch,
+    findOutliers(picture, width, height, noise, (i) => smooth[i]!),
+  );
 
   const [x, y] = [top % width, Math.floor(top / width)];
   for (const factor of [1, 0.3, 3]) {
@@ -77,7 +80,14 @@ function boxMean(picture: Float64Array, width: number, height: number, kind: "ma
   return smooth;
 }
 
-function runningMean(from: Float64Array, to: Float64Array, start: number, stride: number, count: number, reach: number) {
+function runningMean(
+  from: Float64Array,
+  to: Float64Array,
+  start: number,
+  stride: number,
+  count: number,
+  reach: number,
+) {
   let sum = 0;
   let inside = 0;
   for (let i = -reach; i < count; i++) {

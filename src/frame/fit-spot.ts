@@ -74,7 +74,12 @@ export function fitPatch(kind: "map" | "trace", patch: Patch, start: Parameters,
 }
 
 /** step = I⁻¹s; returns its squared length in standard deviations, sᵀI⁻¹s. */
-export function newtonStep(evaluation: Evaluation, covariance: Float64Array, n: number, step: Float64Array): number {
+export function newtonStep(
+  evaluation: Evaluation,
+  covariance: Float64Array,
+  n: number,
+  step: Float64Array,
+): number {
   let length2 = 0;
   for (let i = 0; i < n; i++) {
     let sum = 0;
@@ -108,7 +113,8 @@ function pinBackground(
   noise: NoiseLaw,
 ): number {
   const { background, count } = LAYOUT[kind];
-  if (noise.floor > 0 || p[background]! > SMALLEST_BACKGROUND || evaluation.score[background]! >= 0) return Number.POSITIVE_INFINITY;
+  if (noise.floor > 0 || p[background]! > SMALLEST_BACKGROUND || evaluation.score[background]! >= 0)
+    return Number.POSITIVE_INFINITY;
   const m = count - 1;
   const reduced = new Float64Array(m * m);
   for (let i = 0; i < m; i++) {
@@ -126,7 +132,8 @@ function longestStep(kind: "map" | "trace", p: Parameters, step: Float64Array): 
   const [sx, sxy, sy] = variances(kind, step);
   const sigma = Math.sqrt(Math.max(vx, vy));
   let share = 1;
-  for (const i of LAYOUT[kind].position) share = Math.min(share, sigma / Math.max(Math.abs(step[i]!), 1e-300));
+  for (const i of LAYOUT[kind].position)
+    share = Math.min(share, sigma / Math.max(Math.abs(step[i]!), 1e-300));
   while (share > 1e-6) {
     const grown: [number, number, number] = [vx + share * sx, vxy + share * sxy, vy + share * sy];
     if (smallest(grown) > smallest([vx, vxy, vy]) / 3 && largest(grown) < 3 * largest([vx, vxy, vy])) break;
@@ -153,6 +160,7 @@ function plausible(kind: "map" | "trace", patch: Patch, p: Parameters): boolean 
   const { x0, y0, width, height } = patch.rectangle;
   const sigma = variances(kind, p);
   const reach = Math.max(width, height);
-  const inside = p[1]! >= x0 && p[1]! < x0 + width && (kind === "trace" || (p[2]! >= y0 && p[2]! < y0 + height));
+  const inside =
+    p[1]! >= x0 && p[1]! < x0 + width && (kind === "trace" || (p[2]! >= y0 && p[2]! < y0 + height));
   return inside && smallest(sigma) > SMALLEST_VARIANCE && largest(sigma) < reach * reach;
 }

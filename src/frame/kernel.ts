@@ -107,7 +107,15 @@ export function evaluateTrace(patch: Patch, p: Parameters, noise: NoiseLaw, out:
   assemble(4, patch, p[3]!, noise, out);
 }
 
-function row(index: number, one: number, dx: number, dy: number, dxx: number, dxy: number, dyy: number): void {
+function row(
+  index: number,
+  one: number,
+  dx: number,
+  dy: number,
+  dxx: number,
+  dxy: number,
+  dyy: number,
+): void {
   const at = index * 7;
   transform[at] = one;
   transform[at + 1] = dx;
@@ -220,11 +228,20 @@ function accumulate(
     linearMoments[6]! += lAll;
     addSquares(q0, q1, q2, q3, q4, dy, dy2);
   }
-  for (const index of patch.excluded) subtractPixel(patch, index, peak, cx, cy, pxx, pxy, pyy, background, noise);
+  for (const index of patch.excluded)
+    subtractPixel(patch, index, peak, cx, cy, pxx, pxy, pyy, background, noise);
 }
 
 /** Adds one row's Σ w·g²·dxᵃ, a = 0…4, times dyᵇ, a + b ≤ 4. */
-function addSquares(q0: number, q1: number, q2: number, q3: number, q4: number, dy: number, dy2: number): void {
+function addSquares(
+  q0: number,
+  q1: number,
+  q2: number,
+  q3: number,
+  q4: number,
+  dy: number,
+  dy2: number,
+): void {
   const dy3 = dy2 * dy;
   squareMoments[0]! += q0;
   squareMoments[1]! += q0 * dy;

@@ -61,7 +61,9 @@ function medianAround(photons: ArrayLike<number>, width: number, height: number,
   }
   neighbours.sort((a, b) => a - b);
   const middle = neighbours.length >> 1;
-  return neighbours.length % 2 === 1 ? neighbours[middle]! : (neighbours[middle - 1]! + neighbours[middle]!) / 2;
+  return neighbours.length % 2 === 1
+    ? neighbours[middle]!
+    : (neighbours[middle - 1]! + neighbours[middle]!) / 2;
 }
 
 /** Takes outliers of a patch out of the fit. */

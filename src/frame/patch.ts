@@ -37,5 +37,5 @@ const SMALLEST_VARIANCE = 1e-9;
 /** Variance of a pixel whose mean is `mean` photons, photons². */
 export function pixelVariance(noise: NoiseLaw, mean: number): number {
   const variance = noise.floor + (mean > 0 ? noise.excess * mean : 0);
-  return variance > SMALLEST_VARIANCE ? variance : SMALLEST_VARIANCE;
+  return Math.max(variance, SMALLEST_VARIANCE);
 }

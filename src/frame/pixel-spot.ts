@@ -1,5 +1,5 @@
-import type { Covariance, Spot } from "./spot.ts";
 import type { Parameters } from "./kernel.ts";
+import type { Covariance, Spot } from "./spot.ts";
 
 /**
  * The same spot in the kernel's units (pixels, a vector) and in the analysis' units (µm, named): N and B are photons in

@@ -8,6 +8,8 @@ import type { Parameters } from "./kernel.ts";
 import { isOutlier, tolerance } from "./outliers.ts";
 import type { NoiseLaw, Patch, Rectangle } from "./patch.ts";
 import { LAYOUT } from "./pixel-spot.ts";
+import type { Surroundings } from "./surroundings.ts";
+import { surveyBackground } from "./surroundings.ts";
 
 /** All frames of a stack, cut around the spot and ready to fit. */
 export interface FrameSet {
@@ -23,6 +25,8 @@ export interface FrameSet {
   readonly saturated: readonly boolean[];
   /** Frames whose pixels are all the same: nothing was recorded. */
   readonly empty: readonly boolean[];
+  /** How even the background is around the spot. */
+  readonly surroundings: Surroundings;
   /** Pixels set aside outside the patch; those inside are listed in each patch. */
   readonly outerOutliers: Int32Array;
 }
@@ -61,6 +65,15 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
   const widest = widestSpot(stack, reader, after, first, noise);
   const rectangle = patchAround(kind, first.parameters, widest, REACH * reachFactor, width, height);
 
+  const surroundings = surveyBackground(
+    whole,
+    width,
+    height,
+    [first.parameters[1]!, kind === "map" ? first.parameters[2]! : 0],
+    [REACH * widest[0], REACH * widest[1]],
+    sumNoise(noise, after.length),
+  );
+
   const patches: Patch[] = [];
   const saturated: boolean[] = [];
   const empty: boolean[] = [];
@@ -76,7 +89,18 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
   const typical = first.parameters.slice();
   typical[0]! /= after.length;
   typical[LAYOUT[kind].background]! /= after.length;
-  return { kind, pixel: stack.acquisition.space.pixel.value, noise, rectangle, patches, typical, saturated, empty, outerOutliers };
+  return {
+    kind,
+    pixel: stack.acquisition.space.pixel.value,
+    noise,
+    rectangle,
+    patches,
+    typical,
+    saturated,
+    empty,
+    surroundings,
+    outerOutliers,
+  };
 }
 
 /** The noise of a sum of `count` frames: the means add, and so do the read noises' variances. */
@@ -124,7 +148,13 @@ function patchAround(
 }
 
 /** Takes hot and struck pixels out of the pool; the pool's own mean says what a pixel should hold. */
-function removeOuterOutliers(photons: Float64Array, width: number, height: number, patch: Patch, noise: NoiseLaw): number {
+function removeOuterOutliers(
+  photons: Float64Array,
+  width: number,
+  height: number,
+  patch: Patch,
+  noise: NoiseLaw,
+): number {
   if (patch.outerCount === 0) return 0;
   const { x0, y0 } = patch.rectangle;
   const mean = patch.outerSum / patch.outerCount;
@@ -132,7 +162,8 @@ function removeOuterOutliers(photons: Float64Array, width: number, height: numbe
   let removed = 0;
   const inspect = (from: number, to: number): void => {
     for (let i = from; i < to; i++) {
-      if (Math.abs(photons[i]! - mean) <= limit || !isOutlier(photons, width, height, i, noise, mean)) continue;
+      if (Math.abs(photons[i]! - mean) <= limit || !isOutlier(photons, width, height, i, noise, mean))
+        continue;
       patch.outerCount--;
       patch.outerSum -= photons[i]!;
       removed++;

@@ -12,7 +12,11 @@ export interface ScoredSpot {
   /** I⁻¹ at the reference, row-major. */
   readonly covariance: Float64Array;
   /** Light with Σ held at the reference: estimate, variance, and how it answers to an error of the reference's Σ. */
-  readonly light: { readonly value: number; readonly variance: number; readonly perVariance: readonly number[] };
+  readonly light: {
+    readonly value: number;
+    readonly variance: number;
+    readonly perVariance: readonly number[];
+  };
   /** Pearson's χ² of the reference and the pixels it counts. */
   readonly pearson: number;
   readonly pixels: number;
@@ -50,21 +54,27 @@ export function scoreSpot(
 }
 
 /** Light, centre and background free, Σ held: N = N_ref + (J⁻¹s)_N with J the information without Σ's rows. */
-function lightGivenWidth(kind: "map" | "trace", evaluation: Evaluation, reference: Parameters): ScoredSpot["light"] | null {
+function lightGivenWidth(
+  kind: "map" | "trace",
+  evaluation: Evaluation,
+  reference: Parameters,
+): ScoredSpot["light"] | null {
   const { count, variance } = LAYOUT[kind];
   const { information, score } = evaluation;
   const widths: readonly number[] = variance;
   const free = Array.from({ length: count }, (_, i) => i).filter((i) => !widths.includes(i));
   const m = free.length;
   const inner = new Float64Array(m * m);
-  for (let i = 0; i < m; i++) for (let j = 0; j < m; j++) inner[i * m + j] = information[free[i]! * count + free[j]!]!;
+  for (let i = 0; i < m; i++)
+    for (let j = 0; j < m; j++) inner[i * m + j] = information[free[i]! * count + free[j]!]!;
   if (!invertSymmetric(inner, m)) return null;
   let step = 0;
   const perVariance = widths.map(() => 0);
   for (let j = 0; j < m; j++) {
     const weight = inner[j]!;
     step += weight * score[free[j]!]!;
-    for (let k = 0; k < widths.length; k++) perVariance[k]! -= weight * information[free[j]! * count + widths[k]!]!;
+    for (let k = 0; k < widths.length; k++)
+      perVariance[k]! -= weight * information[free[j]! * count + widths[k]!]!;
   }
   return { value: reference[0]! + step, variance: inner[0]!, perVariance };
 }

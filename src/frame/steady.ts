@@ -15,7 +15,12 @@ export function steadyCourse(
   values: ArrayLike<number>,
   variances: ArrayLike<number>,
   fits: (chi2: number, degreesOfFreedom: number) => boolean,
-): { readonly kind: "constant" | "line" | "own"; readonly slope: number; readonly slopeU: number; at(index: number): number } {
+): {
+  readonly kind: "constant" | "line" | "own";
+  readonly slope: number;
+  readonly slopeU: number;
+  at(index: number): number;
+} {
   let w0 = 0;
   let wt = 0;
   let wtt = 0;
@@ -39,7 +44,8 @@ export function steadyCourse(
   const slope = determinant > 0 ? (w0 * wty - wt * wy) / determinant : 0;
   const intercept = (wy - slope * wt) / w0;
   const slopeU = determinant > 0 ? Math.sqrt(w0 / determinant) : Number.POSITIVE_INFINITY;
-  const course = (line: boolean) => (index: number) => (line ? intercept + slope * (times[index]! - origin) : mean);
+  const course = (line: boolean) => (index: number) =>
+    line ? intercept + slope * (times[index]! - origin) : mean;
   const chi2 = (at: (index: number) => number): number => {
     let sum = 0;
     for (let i = 0; i < values.length; i++) {
@@ -50,7 +56,8 @@ export function steadyCourse(
   const result = { slope, slopeU };
   // a slope worth four standard deviations is a drift even where scatter hides it from χ²
   const steady = Math.abs(slope) < 4 * slopeU;
-  if (steady && fits(chi2(course(false)), count - 1)) return { ...result, kind: "constant", at: course(false) };
+  if (steady && fits(chi2(course(false)), count - 1))
+    return { ...result, kind: "constant", at: course(false) };
   if (fits(chi2(course(true)), count - 2)) return { ...result, kind: "line", at: course(true) };
   const fallback = course(true);
   return { ...result, kind: "own", at: (i) => (Number.isFinite(values[i]!) ? values[i]! : fallback(i)) };

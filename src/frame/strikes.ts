@@ -7,7 +7,8 @@ import { pixelVariance } from "./patch.ts";
 export function meanAt(kind: "map" | "trace", patch: Patch, p: Parameters, index: number): number {
   const { x0, y0, width } = patch.rectangle;
   const dx = x0 + (index % width) - p[1]!;
-  if (kind === "trace") return (p[0]! / Math.sqrt(2 * Math.PI * p[2]!)) * Math.exp((-0.5 * dx * dx) / p[2]!) + p[3]!;
+  if (kind === "trace")
+    return (p[0]! / Math.sqrt(2 * Math.PI * p[2]!)) * Math.exp((-0.5 * dx * dx) / p[2]!) + p[3]!;
   const dy = y0 + Math.floor(index / width) - p[2]!;
   const [xx, xy, yy] = [p[3]!, p[4]!, p[5]!];
   const determinant = xx * yy - xy * xy;
@@ -37,8 +38,8 @@ export function findStrikes(kind: "map" | "trace", patch: Patch, p: Parameters, 
       const along = (above + below) / 2;
       const gap2 = Math.max((value - across) ** 2, (value - along) ** 2);
       // a quarter of (5.5 s.d. + 5 photons)² is at least 7.5 variances and 6 photons² at the smaller neighbourhood
-      const least = across < along ? across : along;
-      if (gap2 < 7.5 * pixelVariance(noise, least < value ? least : value) + 6) continue;
+      const least = Math.min(across, along);
+      if (gap2 < 7.5 * pixelVariance(noise, Math.min(least, value)) + 6) continue;
       if (isOutlier(data, width, height, i, noise, meanAt(kind, patch, p, i))) found.push(i);
     }
   }

@@ -1,10 +1,10 @@
+import type { Decays } from "../decay/fit.ts";
 import type { PatchFit } from "../frame/fit-spot.ts";
 import type { FrameSet } from "../frame/prepare.ts";
 import { prepareFrames } from "../frame/prepare.ts";
 import type { SmoothModels } from "../frame/references.ts";
 import type { ScoredSpot } from "../frame/score-spot.ts";
 import type { FrameFlag } from "../frame/spot.ts";
-import type { Decays } from "../decay/fit.ts";
 import { InputFault } from "../stack/fault.ts";
 import type { Stack } from "../stack/stack.ts";
 import type { LawFit, TransportLaw } from "../transport/laws.ts";

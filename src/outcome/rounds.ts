@@ -101,7 +101,23 @@ export class Rounds {
       before = value;
     }
     const { stack, frames, own, scored, models, flags, times, light, drift } = this;
-    return { stack, frames, own, scored, models, flags, times, widths, line, laws, preferredLaw, light, decays, drift, rounds };
+    return {
+      stack,
+      frames,
+      own,
+      scored,
+      models,
+      flags,
+      times,
+      widths,
+      line,
+      laws,
+      preferredLaw,
+      light,
+      decays,
+      drift,
+      rounds,
+    };
   }
 
   /** The sum of all frames is every frame's first model. */
@@ -123,7 +139,9 @@ export class Rounds {
     for (let i = 0; i < frames.patches.length; i++) {
       const usable = !frames.empty[i] && !this.flags[i]!.includes("saturated");
       const reference = referenceAt(frames, this.models, i);
-      this.scored[i] = usable ? scoreSpot(frames.kind, frames.patches[i]!, reference, frames.noise, evaluation) : null;
+      this.scored[i] = usable
+        ? scoreSpot(frames.kind, frames.patches[i]!, reference, frames.noise, evaluation)
+        : null;
     }
   }
 
@@ -141,7 +159,8 @@ export class Rounds {
       value[i] = scored.light.value;
       sigma[i] = Math.sqrt(scored.light.variance);
       const beforePulse = this.flags[i]!.includes("before-pulse");
-      if ((!beforePulse || acquisition.response !== null) && !this.flags[i]!.includes("fit-failed")) used.push(i);
+      if ((!beforePulse || acquisition.response !== null) && !this.flags[i]!.includes("fit-failed"))
+        used.push(i);
     }
     this.light = { frames: used, value, sigma, perVariance };
     if (used.length < 3) return null;
@@ -164,11 +183,11 @@ export class Rounds {
     const { frames: used, value } = this.light;
     const fit = decays?.fits[decays.preferred] ?? null;
     const expected = runningMean(value);
-    if (fit !== null && fit.converged && fit.pValue > 1e-3) {
+    if (fit?.converged && fit.pValue > 1e-3) {
       for (const [k, i] of used.entries()) expected[i] = fit.prediction[k]!;
     }
     const least = 1e-3 * Math.max(...expected.filter(Number.isFinite), 1e-3);
-    this.expectedLight = expected.map((light) => (light > least ? light : least));
+    this.expectedLight = expected.map((light) => Math.max(light, least));
   }
 
   /** Maximum likelihood of each bright frame by itself, hot and struck pixels set aside. */
@@ -229,8 +248,11 @@ export class Rounds {
         const t = Math.max(times[i]!, Math.min(first, 0));
         const straight = line.intercept.map((value, a) => value + 2 * line.diffusion[a]! * t);
         if (law === null || law.law === "line") return straight;
-        const shift = law.value(t) - (straight.length === 3 ? (straight[0]! + straight[2]!) / 2 : straight[0]!);
-        return straight.length === 3 ? [straight[0]! + shift, straight[1]!, straight[2]! + shift] : [straight[0]! + shift];
+        const shift =
+          law.value(t) - (straight.length === 3 ? (straight[0]! + straight[2]!) / 2 : straight[0]!);
+        return straight.length === 3
+          ? [straight[0]! + shift, straight[1]!, straight[2]! + shift]
+          : [straight[0]! + shift];
       },
     };
   }
@@ -239,7 +261,8 @@ export class Rounds {
   private flagDim(): void {
     for (const [i, scored] of this.scored.entries()) {
       const flags: FrameFlag[] = this.flags[i]!.filter((flag) => flag !== "too-dim");
-      if (scored !== null && this.expectedLight[i]! < FAINTEST * Math.sqrt(scored.light.variance)) flags.push("too-dim");
+      if (scored !== null && this.expectedLight[i]! < FAINTEST * Math.sqrt(scored.light.variance))
+        flags.push("too-dim");
       this.flags[i] = flags;
     }
   }
@@ -279,9 +302,16 @@ export class Rounds {
     const { kind, pixel } = this.frames;
     const layout = LAYOUT[kind];
     const course = (at: number) => {
-      const values = this.scored.map((s, i) => (s === null || this.flags[i]!.length > 0 ? Number.NaN : s.estimate[at]!));
+      const values = this.scored.map((s, i) =>
+        s === null || this.flags[i]!.length > 0 ? Number.NaN : s.estimate[at]!,
+      );
       const variances = this.scored.map((s) => (s === null ? 1 : s.covariance[at * layout.count + at]!));
-      return steadyCourse(this.times, values, variances, (chi2, dof) => chiSquareUpperTail(chi2, dof) > ACCEPTABLE);
+      return steadyCourse(
+        this.times,
+        values,
+        variances,
+        (chi2, dof) => chiSquareUpperTail(chi2, dof) > ACCEPTABLE,
+      );
     };
     const centre = layout.position.map((at) => course(at));
     const background = course(layout.background);
@@ -299,7 +329,13 @@ export class Rounds {
   }
 }
 
-function firstFlags(delay: number, i: number, stack: Stack, frames: FrameSet, options: AnalysisOptions): FrameFlag[] {
+function firstFlags(
+  delay: number,
+  i: number,
+  stack: Stack,
+  frames: FrameSet,
+  options: AnalysisOptions,
+): FrameFlag[] {
   const { gate } = stack.acquisition.time;
   const flags: FrameFlag[] = [];
   if (delay < 0) flags.push("before-pulse");

@@ -1,5 +1,5 @@
-import { erf } from "../numerics/distributions.ts";
 import type { SmoothModels } from "../frame/references.ts";
+import { erf } from "../numerics/distributions.ts";
 import type { Acquisition } from "../stack/acquisition.ts";
 
 /**
@@ -21,7 +21,9 @@ export function transmission(
   if (!behindSlit && order === 1) return null;
   const spread = (i: number): number => {
     const variance = models.variance(i);
-    return kind === "map" ? Math.sqrt(Math.max(variance[0]! * variance[2]! - variance[1]! ** 2, 1e-12)) : variance[0]!;
+    return kind === "map"
+      ? Math.sqrt(Math.max(variance[0]! * variance[2]! - variance[1]! ** 2, 1e-12))
+      : variance[0]!;
   };
   const first = spread(frames[0]!);
   return Float64Array.from(frames, (i) => {

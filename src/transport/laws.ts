@@ -106,7 +106,12 @@ const brokenLine: LawForm = {
     t > p[3]! ? 2 * (p[1]! - p[2]!) : 0,
   ],
   starts: ({ intercept, diffusion, first, last }) =>
-    [0.2, 0.4, 0.65].map((share) => [intercept, 1.5 * diffusion, 0.5 * diffusion, first + share * (last - first)]),
+    [0.2, 0.4, 0.65].map((share) => [
+      intercept,
+      1.5 * diffusion,
+      0.5 * diffusion,
+      first + share * (last - first),
+    ]),
   bounds: ({ first, last }) => ({
     lower: [-FREE, -FREE, -FREE, first + 0.05 * (last - first)],
     upper: [FREE, FREE, FREE, last - 0.05 * (last - first)],
@@ -121,7 +126,12 @@ const FORMS = [line, powerLaw, arrest, brokenLine] as const;
  * @param widths the frames in the window, in order of time
  */
 export function fitLaws(widths: readonly Width[]): Record<TransportLaw, LawFit | null> {
-  const fits: Record<TransportLaw, LawFit | null> = { line: null, power_law: null, arrest: null, broken_line: null };
+  const fits: Record<TransportLaw, LawFit | null> = {
+    line: null,
+    power_law: null,
+    arrest: null,
+    broken_line: null,
+  };
   const times = widths.map((width) => width.time);
   const y = widths.map(perAxis);
   const sigma = widths.map((width) => Math.sqrt(perAxisVariance(width)));
@@ -133,7 +143,12 @@ export function fitLaws(widths: readonly Width[]): Record<TransportLaw, LawFit |
     fits[form.law] = fit;
     if (form.law === "line" && fit !== null) {
       const floor = Math.sqrt(fit.covariance[3]!);
-      guess = { intercept: fit.parameters[0]!, diffusion: Math.max(Math.abs(fit.parameters[1]!), floor), first, last };
+      guess = {
+        intercept: fit.parameters[0]!,
+        diffusion: Math.max(Math.abs(fit.parameters[1]!), floor),
+        first,
+        last,
+      };
     }
   }
   return fits;

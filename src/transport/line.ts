@@ -47,7 +47,9 @@ export function fitLine(widths: readonly Width[]): LineFit | null {
     }
   }
   if (!invertSymmetric(normal, n)) return null;
-  const theta = Array.from({ length: n }, (_, a) => right.reduce((sum, r, b) => sum + normal[a * n + b]! * r, 0));
+  const theta = Array.from({ length: n }, (_, a) =>
+    right.reduce((sum, r, b) => sum + normal[a * n + b]! * r, 0),
+  );
   const intercept = theta.slice(0, components);
   const diffusion = theta.slice(components);
 

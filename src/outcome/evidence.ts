@@ -1,0 +1,147 @@
+import { LAYOUT } from "../frame/pixel-spot.ts";
+import { referenceAt } from "../frame/references.ts";
+import { shapeScore } from "../frame/shape.ts";
+import { chiSquareUpperTail } from "../numerics/distributions.ts";
+import { runsTest } from "../numerics/runs-test.ts";
+import type { LawFit } from "../transport/laws.ts";
+import { fitLine, meanDiffusion } from "../transport/line.ts";
+import { perAxis, perAxisVariance } from "../transport/width.ts";
+import type { Reading } from "./read-recording.ts";
+
+/** An estimate over its standard uncertainty, with both. */
+export interface Sign {
+  readonly value: number;
+  readonly u: number;
+}
+
+/** What speaks for and against the plain picture of one diffusing, decaying Gaussian spot. */
+export interface Evidence {
+  /** q of the spot's shape over all bright frames of the window: < 0 flat top, > 0 core on a foot (frame/shape.ts). */
+  readonly shape: Sign;
+  /** D of the first and of the second half of the window's information, µm²/ns. */
+  readonly early: Sign;
+  readonly late: Sign;
+  /** Probability of the preferred law's χ². */
+  readonly lawP: number;
+  /** Of the line's χ² over all components. */
+  readonly lineP: number;
+  readonly runsP: number;
+  /** Light before the pulse over the light right after it; null without frames before the pulse. */
+  readonly glow: Sign | null;
+  /** Scatter of the pixels over the detector's stated noise: Pearson's χ² over its degrees of freedom. */
+  readonly scatter: Sign;
+  /** Displacement of the centre over the window, in standard deviations of the spot. */
+  readonly drift: Sign;
+  /** Distance of the nearest border of the picture from the centre of the widest used spot, standard deviations. */
+  readonly clearance: number;
+  /** Largest relative departure of the background between eight sectors around the spot, with the test's probability. */
+  readonly background: { readonly p: number; readonly swing: number };
+}
+
+export function gatherEvidence(reading: Reading): Evidence {
+  const { laws, preferredLaw, line, widths } = reading;
+  const law = preferredLaw === "line" ? null : laws[preferredLaw];
+  return {
+    shape: shapeOf(reading),
+    ...halves(reading),
+    lawP: law?.pValue ?? chiSquareUpperTail(line.chi2, line.degreesOfFreedom),
+    lineP: chiSquareUpperTail(line.chi2, line.degreesOfFreedom),
+    runsP: runsTest(standardised(reading, law)),
+    glow: glowOf(reading),
+    scatter: scatterOf(reading),
+    drift: driftOf(reading, widths[0]!.time, widths.at(-1)!.time),
+    clearance: clearanceOf(reading),
+    background: reading.frames.surroundings,
+  };
+}
+
+/** Residuals of the variance per axis against the preferred law, in standard deviations. */
+function standardised({ widths, line }: Reading, law: LawFit | null): number[] {
+  const { value } = law ?? lineValue(line);
+  return widths.map((width) => (perAxis(width) - value(width.time)) / Math.sqrt(perAxisVariance(width)));
+}
+
+function lineValue(line: Reading["line"]): { value(t: number): number } {
+  const mean = (c: readonly number[]): number => (c.length === 3 ? (c[0]! + c[2]!) / 2 : c[0]!);
+  return { value: (t) => mean(line.intercept) + 2 * mean(line.diffusion) * t };
+}
+
+/** Frames with at least this much light over its standard deviation say something about shape. */
+const BRIGHT = 8;
+
+function shapeOf(reading: Reading): Sign {
+  const { frames, widths, own, light, models } = reading;
+  let score = 0;
+  let information = 0;
+  for (const { frame } of widths) {
+    if (light.value[frame]! < BRIGHT * light.sigma[frame]!) continue;
+    const p = own[frame]?.parameters ?? referenceAt(frames, models, frame);
+    const one = shapeScore(frames.kind, frames.patches[frame]!, p, frames.noise);
+    score += one.score;
+    information += one.information;
+  }
+  if (information === 0) return { value: 0, u: Number.MAX_VALUE };
+  return { value: score / information, u: 1 / Math.sqrt(information) };
+}
+
+/** D before and after the middle of the slope's information. */
+function halves(reading: Reading): { early: Sign; late: Sign } {
+  const { widths } = reading;
+  const weights = widths.map((w) => 1 / perAxisVariance(w));
+  const total = weights.reduce((a, b) => a + b, 0);
+  let sum = 0;
+  let split = 0;
+  while (split < widths.length && sum < total / 2) sum += weights[split++]!;
+  split = Math.min(Math.max(split, 3), widths.length - 3);
+  const slope = (part: Reading["widths"]): Sign => {
+    const fit = part.length >= 3 ? fitLine(part) : null;
+    if (fit === null) return { value: 0, u: Number.MAX_VALUE };
+    const { value, variance } = meanDiffusion(fit);
+    return { value, u: Math.sqrt(variance) };
+  };
+  return { early: slope(widths.slice(0, split)), late: slope(widths.slice(split)) };
+}
+
+function glowOf({ light, flags, widths }: Reading): Sign | null {
+  let weights = 0;
+  let sum = 0;
+  for (const [i, list] of flags.entries()) {
+    if (!list.includes("before-pulse") || !Number.isFinite(light.value[i]!)) continue;
+    const w = 1 / light.sigma[i]! ** 2;
+    weights += w;
+    sum += w * light.value[i]!;
+  }
+  if (weights === 0) return null;
+  const first = light.value[widths[0]!.frame]!;
+  return { value: sum / weights / first, u: 1 / Math.sqrt(weights) / first };
+}
+
+function scatterOf({ widths, scored, frames }: Reading): Sign {
+  let chi2 = 0;
+  let pixels = 0;
+  for (const { frame } of widths) {
+    chi2 += scored[frame]!.pearson;
+    pixels += scored[frame]!.pixels - LAYOUT[frames.kind].count;
+  }
+  return { value: chi2 / pixels, u: Math.sqrt(2 / pixels) };
+}
+
+function driftOf({ drift, models, widths }: Reading, from: number, to: number): Sign {
+  const sigma = Math.sqrt(models.variance(widths[0]!.frame)[0]!);
+  const way = to - from;
+  const speed = Math.hypot(...drift.speed);
+  return { value: (speed * way) / sigma, u: (Math.max(...drift.u) * way) / sigma };
+}
+
+function clearanceOf({ stack, frames, models, widths }: Reading): number {
+  const last = widths.at(-1)!.frame;
+  const variance = models.variance(last);
+  const [x, y] = models.centre(last);
+  const { pixel, kind } = frames;
+  const sx = Math.sqrt(Math.max(variance[0]!, 1e-12));
+  const gap = (position: number, count: number): number =>
+    Math.min(position + pixel / 2, (count - 0.5) * pixel - position);
+  const across = gap(x, stack.width) / sx;
+  if (kind === "trace") return across;
+  return Math.min(across, gap(y, stack.height) / Math.sqrt(Math.max(variance[2]!, 1e-12)));
+}

@@ -1,0 +1,300 @@
+import type { Evidence, Sign } from "./evidence.ts";
+import type { Joint } from "./joint.ts";
+import type { Quantities } from "./quantities.ts";
+import type { Reading } from "./read-recording.ts";
+import type { Result } from "./result.ts";
+
+type Reason = Result["verdict"]["reasons"][number];
+type Level = Reason["level"];
+
+/** A departure this many standard deviations long is no chance; some ten signs are looked at in every recording. */
+const SURE = 4;
+
+/** Everything the judges look at. */
+interface Case {
+  readonly reading: Reading;
+  readonly joint: Joint;
+  readonly evidence: Evidence;
+  readonly quantities: Quantities;
+}
+
+/**
+ * Judges a recording: every reason found, the worst first, and the worst one's level as the verdict's. "note" leaves a
+ * result sound, "caution" asks for a look, "unsound" means that the headline numbers should not be used.
+ */
+export function judge(seen: Case): Result["verdict"] {
+  const reasons = JUDGES.flatMap((look) => look(seen) ?? []);
+  const rank: Record<Level, number> = { unsound: 0, caution: 1, note: 2 };
+  reasons.sort((a, b) => rank[a.level] - rank[b.level]);
+  const worst = reasons[0]?.level ?? "note";
+  return { level: worst === "note" ? "sound" : worst, reasons };
+}
+
+const z = ({ value, u }: Sign): number => value / u;
+
+function reason(level: Level, code: string, text: string, advice: string): Reason {
+  return { level, code, text, advice };
+}
+
+const percent = (share: number): string => `${(100 * share).toPrecision(2)} %`;
+
+/** Whether the later half of the window moves less than the earlier one, surely. */
+function slowsDown({ early, late }: Evidence): boolean {
+  return early.value - late.value > SURE * Math.hypot(early.u, late.u);
+}
+
+function bends({ reading, evidence }: Case): boolean {
+  return reading.preferredLaw !== "line" || slowsDown(evidence) || evidence.lawP < 1e-4;
+}
+
+function lawOfSpread(seen: Case): Reason | null {
+  const { reading, evidence } = seen;
+  if (evidence.lawP < 1e-4 && seen.joint.spreadBirge > 1.3) {
+    return reason(
+      "unsound",
+      "line-does-not-fit",
+      `no law of spread describes the widths (probability ${evidence.lawP.toExponential(0)} for the ${named(reading.preferredLaw)}); the uncertainties are widened by ${seen.joint.spreadBirge.toFixed(1)}, which cannot make up for a wrong law`,
+      "look at the residuals over delay; restrict the window with --from and --to to where the spread is regular, or repeat at lower excitation",
+    );
+  }
+  if (reading.preferredLaw === "line") return null;
+  return reason(
+    "caution",
+    "line-does-not-fit",
+    `the widths do not grow on a straight line; a ${named(reading.preferredLaw)} describes them better, and D is ${meaning(reading.preferredLaw)}`,
+    "quote D with its law and window, and look for annihilation, traps or heating before comparing it with other samples",
+  );
+}
+
+function named(law: Reading["preferredLaw"]): string {
+  return {
+    line: "straight line",
+    power_law: "power law",
+    arrest: "motion that comes to rest",
+    broken_line: "line with a break",
+  }[law];
+}
+
+function meaning(law: Reading["preferredLaw"]): string {
+  return {
+    line: "its slope",
+    power_law: "the displacement reached within the lifetime, per time",
+    arrest: "that of the beginning",
+    broken_line: "that before the break",
+  }[law];
+}
+
+/** Annihilation flattens the top and fakes early motion; traps leave a core on a foot and late frames that stand still. */
+function annihilationOrTraps(seen: Case): Reason[] {
+  const { reading, evidence, joint } = seen;
+  const shape = z(evidence.shape);
+  const slowing = bends(seen) && evidence.early.value > evidence.late.value;
+  const decaysFastFirst = reading.decays !== null && reading.decays.preferred !== "exponential";
+  const found: Reason[] = [];
+  const flat = shape < -SURE;
+  const peaked = shape > SURE;
+  if (flat && (slowing || decaysFastFirst)) found.push(annihilation(seen));
+  else if (peaked && (slowing || decaysFastFirst)) found.push(traps(seen));
+  else if (slowing && decaysFastFirst && slowsDown(evidence)) {
+    found.push(joint.decay?.law === "annihilation" ? annihilation(seen) : traps(seen));
+  } else if (flat || peaked) found.push(notGaussian(evidence));
+  return found;
+}
+
+function annihilation({ reading, joint }: Case): Reason {
+  const index = joint.decay?.law === "annihilation" ? joint.decay.names.indexOf("k_n0") : -1;
+  const rate = index >= 0 ? joint.decay!.parameters[index]! : null;
+  const variance = reading.models.variance(reading.widths[0]!.frame);
+  const perAxis = variance.length === 3 ? (variance[0]! + variance[2]!) / 2 : variance[0]!;
+  const d =
+    reading.line.diffusion.length === 3
+      ? (reading.line.diffusion[0]! + reading.line.diffusion[2]!) / 2
+      : reading.line.diffusion[0]!;
+  // D appears k·n·σ²/8 too large, methods of the second moment of a Gaussian spot
+  const fake = rate === null ? null : (rate * perAxis) / 8 / Math.max(Math.abs(d), 1e-12);
+  const size =
+    fake === null
+      ? ""
+      : `; at the start it would fake about ${percent(Math.min(fake, 9.9))} of the apparent D`;
+  return reason(
+    fake !== null && fake > 0.2 ? "unsound" : "caution",
+    "annihilation-suspected",
+    `the spot has a flat top, the light falls faster at first, and the early motion dies out: excitons annihilate each other${size}`,
+    "repeat at a tenth of the pulse energy, or extrapolate D to zero fluence; a larger spot at the same pulse energy does not help",
+  );
+}
+
+function traps({ evidence }: Case): Reason {
+  const { early, late } = evidence;
+  const stopped =
+    late.value < 0.5 * early.value && early.value - late.value > SURE * Math.hypot(early.u, late.u);
+  return reason(
+    stopped ? "unsound" : "caution",
+    "traps-suspected",
+    `a narrow core stands on a broad foot while the later frames move less (late D ${(10 * late.value).toPrecision(2)} after ${(10 * early.value).toPrecision(2)} cm²/s): trapped excitons light up and stay where they are`,
+    "restrict the window to the early frames with --to, and compare spots, temperatures and excitation: traps fill at higher density and empty at higher temperature",
+  );
+}
+
+function notGaussian({ shape }: Evidence): Reason {
+  const peaked = shape.value > 0;
+  return reason(
+    "caution",
+    "spot-not-gaussian",
+    `the spot is ${peaked ? "more peaked" : "flatter"} than a Gaussian (shape ${shape.value.toFixed(3)} ± ${shape.u.toFixed(3)})`,
+    peaked
+      ? "check for scattered light and for traps; the width of a core on a foot follows the brighter of the two"
+      : "check for annihilation, a flat-topped excitation spot and a camera that saturates",
+  );
+}
+
+function noMotion({ quantities, reading }: Case): Reason | null {
+  const { value, u } = quantities.quantities.diffusion_coefficient;
+  if (quantities.moved && value < 0) {
+    return reason(
+      "unsound",
+      "spot-shrinks",
+      `the spot becomes narrower with delay (D = ${value.toPrecision(2)} ± ${u.toPrecision(1)} cm²/s)`,
+      "look for trapped light, defocus drift, a background left in, or species of different lifetime and width",
+    );
+  }
+  if (quantities.moved) return null;
+  return reason(
+    "caution",
+    "no-motion-detected",
+    `the spread of the spot is not told from none (${reading.widths.length} frames); the diffusion length is given as an upper limit`,
+    "more light, longer delays or a smaller excitation spot would tell; quote the limit, not the value",
+  );
+}
+
+function glow({ evidence, reading }: Case): Reason | null {
+  const { glow: share } = evidence;
+  if (share === null || z(share) < SURE || share.value < 0.003) return null;
+  const modelled = reading.stack.acquisition.period !== null;
+  return reason(
+    modelled ? "note" : "caution",
+    "earlier-pulses-glow",
+    `${percent(share.value)} of the first frame's light is there before the pulse: excitons of earlier pulses still glow`,
+    modelled
+      ? "they are summed in the decay; a longer time between pulses would remove them"
+      : "give [excitation] period so that earlier pulses are summed, or lengthen the time between pulses",
+  );
+}
+
+function drift({ evidence }: Case): Reason | null {
+  const { drift: way } = evidence;
+  if (z(way) < SURE || way.value < 0.1) return null;
+  return reason(
+    way.value > 0.5 ? "caution" : "note",
+    "spot-drifts",
+    `the centre of the spot moves by ${way.value.toFixed(2)} of its standard deviation over the window`,
+    "the centre is free in every frame, so the spread does not suffer; check the stage, and the sample for a gradient that pulls excitons",
+  );
+}
+
+function cutOff({ evidence }: Case): Reason | null {
+  if (evidence.clearance >= 3) return null;
+  return reason(
+    evidence.clearance < 1.5 ? "unsound" : "caution",
+    "spot-cut-off",
+    `the border of the picture comes as close as ${Math.max(evidence.clearance, 0).toFixed(1)} standard deviations to the centre of the widest spot`,
+    "centre the spot or record a larger field; what lies outside is taken from the model alone",
+  );
+}
+
+function background({ evidence }: Case): Reason | null {
+  const { p, swing } = evidence.background;
+  if (p > 1e-5 || swing < 0.02) return null;
+  return reason(
+    "caution",
+    "background-not-flat",
+    `the background around the spot differs by up to ${percent(swing)} from side to side`,
+    "record a dark frame and a frame without excitation, and shield stray light: a tilted background shifts widths",
+  );
+}
+
+function noise({ evidence }: Case): Reason | null {
+  const { value, u } = evidence.scatter;
+  const off = Math.abs(value - 1);
+  if (off < 0.1 || off < SURE * u) return null;
+  return reason(
+    off > 0.5 ? "unsound" : "caution",
+    "noise-not-as-stated",
+    `pixels scatter ${value.toPrecision(3)} times the variance that the detector settings give`,
+    "check gain, offset, read_noise and excess_noise in [detector]; every uncertainty rests on them",
+  );
+}
+
+function setAside({ reading }: Case): Reason | null {
+  const saturated = reading.flags.filter((flags) => flags.includes("saturated")).length;
+  if (saturated === 0) return null;
+  return reason(
+    "caution",
+    "frames-saturated",
+    `${saturated} of ${reading.stack.frames} frames reach the detector's saturation and are set aside`,
+    "reduce the exposure of the early frames; their light is missing in the decay too",
+  );
+}
+
+function failed({ reading }: Case): Reason | null {
+  const count = reading.flags.filter((flags) => flags.includes("fit-failed")).length;
+  if (count === 0) return null;
+  return reason(
+    count > reading.stack.frames / 10 ? "unsound" : "caution",
+    "frames-without-spot",
+    `in ${count} bright frames no spot could be fitted; they are set aside`,
+    "look at them in the report: a second spot, a shutter or a shift of the stage",
+  );
+}
+
+function decay({ reading, joint }: Case): Reason | null {
+  const { decay: fit } = joint;
+  if (fit === null) {
+    return reason(
+      "caution",
+      "no-lifetime",
+      "the light over delay gives no lifetime",
+      "record longer delays or more light",
+    );
+  }
+  if (fit.pValue < 1e-4 && joint.decayBirge > 1.3) {
+    return reason(
+      "caution",
+      "decay-does-not-fit",
+      `no decay law describes the light (probability ${fit.pValue.toExponential(0)}); the lifetime's uncertainty is widened by ${joint.decayBirge.toFixed(1)}`,
+      "check that the laser power was steady from frame to frame, and give the response and the period if they matter",
+    );
+  }
+  if (reading.decays?.preferred === "exponential") return null;
+  return reason(
+    "note",
+    "decay-not-exponential",
+    `the light is not one exponential; ${fit.law === "annihilation" ? "the lifetime is that without annihilation" : "the lifetime is amplitude-averaged, the one that belongs to the diffusion length"}`,
+    "compare lifetimes of other samples under the same definition",
+  );
+}
+
+function runs({ evidence }: Case): Reason | null {
+  if (evidence.runsP > 1e-3) return null;
+  return reason(
+    "caution",
+    "residuals-run",
+    `the residuals of the widths keep their sign for longer than chance allows (runs test, probability ${evidence.runsP.toExponential(0)})`,
+    "something varies slowly over delay: focus, laser power or a law that is not quite right",
+  );
+}
+
+const JUDGES: readonly ((seen: Case) => Reason | readonly Reason[] | null)[] = [
+  lawOfSpread,
+  annihilationOrTraps,
+  noMotion,
+  noise,
+  failed,
+  setAside,
+  cutOff,
+  background,
+  glow,
+  drift,
+  decay,
+  runs,
+];
