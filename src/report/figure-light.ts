@@ -19,8 +19,8 @@ import { counted, DECAY_LAW, flagCounts, mainFlag } from "./wording.ts";
 
 type WithLight = FrameRow & { readonly photons: number; readonly u_photons: number };
 
-const HEIGHT = 290;
-const RESIDUAL_HEIGHT = 120;
+const HEIGHT = 250;
+const RESIDUAL_HEIGHT = 108;
 
 /** Light under the spot over delay on a logarithmic scale, with the preferred decay, above its residuals. */
 export function lightFigure(drawing: Drawing, analysis: Analysis): string {

@@ -8,7 +8,7 @@ export interface Drawing {
   readonly document: Document;
 }
 
-export const WIDTH = 560;
+export const WIDTH = 460;
 /** Height of the row above the plot that names the symbols. */
 const KEY_ROW = 20;
 

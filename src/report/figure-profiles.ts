@@ -6,7 +6,7 @@ import { assemble, common, DATA, type Drawing, INK, keyRow, LAW, padded } from "
 import { photonReader, spotLight } from "./light-map.ts";
 import { plain } from "./notation.ts";
 
-const HEIGHT = 230;
+const HEIGHT = 210;
 /** Points a panel at most: enough for a shape, few enough to draw quickly. */
 const MOST_POINTS = 48;
 

@@ -18,7 +18,7 @@ import { counted, flagCounts, mainFlag, TRANSPORT_LAW } from "./wording.ts";
 
 type WithWidth = FrameRow & { readonly variance_um2: number; readonly u_variance_um2: number };
 
-const HEIGHT = 360;
+const HEIGHT = 310;
 /** Two-sided 95 % of a normal distribution. */
 const COVER95 = 1.96;
 

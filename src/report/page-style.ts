@@ -3,13 +3,13 @@ export const PAGE_STYLE = `
 :root {
   color-scheme: light dark;
   --paper: #fbfbfa; --raised: #ffffff; --ink: #1d242b; --soft: #5a636c; --rule: #d9dde0; --accent: #1b5e8c;
-  --sound: #1d6b45; --caution: #8a5a00; --unsound: #a1282d; --data: #1b5e8c; --law: #c2571a;
+  --sound: #1d6b45; --caution: #8a5a00; --unsound: #a1282d; --data: #1b5e8c; --law: #c2571a; --trap: #8a1c5b;
   --sans: system-ui, -apple-system, "Segoe UI", Roboto, "Helvetica Neue", "Liberation Sans", Arial, sans-serif;
 }
 @media (prefers-color-scheme: dark) {
   :root {
     --paper: #15191d; --raised: #1c2126; --ink: #e4e8eb; --soft: #a1abb4; --rule: #373f46; --accent: #7db9e4;
-    --sound: #6fc79b; --caution: #e0b04f; --unsound: #f0898c; --data: #6fb2e2; --law: #ec8a4d;
+    --sound: #6fc79b; --caution: #e0b04f; --unsound: #f0898c; --data: #6fb2e2; --law: #ec8a4d; --trap: #e08cc0;
   }
 }
 * { box-sizing: border-box; }
@@ -34,6 +34,7 @@ a { color: var(--accent); }
 .verdict { border-top: 4px solid var(--level); padding-top: 1.1rem; }
 .sound { --level: var(--sound); } .caution { --level: var(--caution); } .unsound { --level: var(--unsound); }
 .call { display: flex; flex-wrap: wrap; gap: 0.2rem 0.8rem; align-items: baseline; font-size: 1.15rem; margin: 0; max-width: none; }
+.call span { font-weight: 400; }
 .call strong { color: var(--level); font-size: 1.6rem; font-weight: 650; letter-spacing: -0.01em; }
 .numbers { display: grid; grid-template-columns: repeat(auto-fit, minmax(15rem, 1fr)); gap: 1px; margin: 1.3rem 0 1.6rem; background: var(--rule); border: 1px solid var(--rule); }
 .number { background: var(--raised); padding: 0.9rem 1rem 0.8rem; }
@@ -63,14 +64,17 @@ section > h2 { margin-bottom: 0.9rem; }
 }
 figure { margin: 0; min-width: 0; }
 figcaption { color: var(--soft); font-size: 0.88rem; margin-top: 0.4rem; max-width: 44rem; }
-.figure { display: block; width: 100%; height: auto; max-width: 46rem; }
+.figure { display: block; width: 100%; height: auto; max-width: 38rem; }
 .figure [fill="#1b5e8c"] { fill: var(--data); } .figure [stroke="#1b5e8c"] { stroke: var(--data); }
+.figure [stroke="#8a1c5b"] { stroke: var(--trap); }
 .figure [fill="#c2571a"] { fill: var(--law); } .figure [stroke="#c2571a"] { stroke: var(--law); }
 
 table { border-collapse: collapse; font-size: 0.92rem; }
 th, td { text-align: left; padding: 0.3rem 1.1rem 0.3rem 0; vertical-align: baseline; border-bottom: 1px solid var(--rule); }
 thead th { font-weight: 600; border-bottom-color: var(--soft); }
 tbody th { font-weight: 400; }
+.scroll th, .scroll td { overflow-wrap: normal; }
+.formula { white-space: nowrap; }
 td.n, th.n { text-align: right; white-space: nowrap; }
 tr.chosen th, tr.chosen td { font-weight: 600; }
 caption { text-align: left; font-weight: 600; padding-bottom: 0.35rem; }
@@ -101,7 +105,7 @@ details > summary { cursor: pointer; color: var(--accent); margin-bottom: 0.6rem
 .ramp canvas { width: 100%; height: 0.7rem; }
 .ramp span:last-child { grid-column: 1 / -1; color: var(--soft); }
 .beside { display: grid; grid-template-columns: repeat(auto-fit, minmax(min(17rem, 100%), 1fr)); gap: 1rem 1.5rem; margin-top: 1.1rem; align-items: start; }
-.cut { width: 100%; height: auto; display: block; font-size: 13px; fill: var(--ink); }
+.cut { width: 100%; max-width: 30rem; height: auto; display: block; font-size: 13px; fill: var(--ink); }
 .cut .axes { fill: none; stroke: var(--soft); stroke-opacity: 0.5; }
 .cut .data { fill: var(--data); }
 .cut .law { fill: none; stroke: var(--law); stroke-width: 2; }
@@ -115,15 +119,21 @@ footer p { max-width: none; margin-bottom: 0.3rem; }
   .scroll table { font-size: 0.85rem; }
 }
 @media print {
-  :root { color-scheme: light; --paper: #fff; --raised: #fff; --ink: #000; --soft: #444; --rule: #bbb; --accent: #000; --sound: #1d6b45; --caution: #8a5a00; --unsound: #a1282d; --data: #1b5e8c; --law: #c2571a; }
+  :root { color-scheme: light; --paper: #fff; --raised: #fff; --ink: #000; --soft: #444; --rule: #bbb; --accent: #000; --sound: #1d6b45; --caution: #8a5a00; --unsound: #a1282d; --data: #1b5e8c; --law: #c2571a; --trap: #8a1c5b; }
   @page { margin: 16mm 14mm; }
   body { font-size: 10pt; }
   main, .top, footer { padding-left: 0; padding-right: 0; max-width: none; }
   .controls > :not(.live), .skip, summary { display: none; }
   .scroll, .scroll.tall { overflow: visible; max-height: none; }
-  .numbers { grid-template-columns: repeat(4, 1fr); }
+  .numbers { grid-template-columns: repeat(4, 1fr); margin: 0.8rem 0; }
+  .number { padding: 0.5rem 0.6rem; }
   .number .value { font-size: 12pt; }
-  figure, .number, .reasons li, tr, .quote, .maps, .beside { break-inside: avoid; }
+  .number dt, .number .range, figcaption, table, .ramp { font-size: 8pt; }
+  .pair { display: grid; grid-template-columns: 1fr 1fr; gap: 1rem; }
+  .reasons { gap: 0.5rem; }
+  section { padding: 1rem 0 0; }
+  .controls { break-after: avoid; margin-bottom: 0.4rem; }
+  .tables table, figure, .number, .reasons li, tr, .quote p, .maps, .beside { break-inside: avoid; }
   h2, h3, caption { break-after: avoid; }
   section + section { margin-top: 0.5rem; }
   canvas { print-color-adjust: exact; -webkit-print-color-adjust: exact; }

@@ -143,7 +143,12 @@ function lawCells(law: Law | null): string[] {
   });
   const lines = [e(law.formula), ...parameters, ...(law.converged ? [] : ["the fit did not converge"])];
   const ratio = law.degrees_of_freedom > 0 ? (law.chi2 / law.degrees_of_freedom).toFixed(2) : "–";
-  return [lines.join("<br>"), ratio, e(probability(law.p_value)), law.weight.toFixed(2)];
+  return [
+    `<span class="formula">${lines.join("<br>")}</span>`,
+    ratio,
+    e(probability(law.p_value)),
+    law.weight.toFixed(2),
+  ];
 }
 
 export function settingsTable(result: Result): string {

@@ -39,7 +39,7 @@ addEventListener("beforeprint", () => { for (const part of document.querySelecto
 function controls(data: ViewerData): string {
   const last = data.frames.length - 1;
   return `<div class="controls">
-<label class="wide" for="frame">${counted(data.frames.length, "frame")}: drag, or use the arrow keys</label>
+<label class="wide" for="frame">${counted(data.frames.length, "frame")}${data.stride > 1 ? ` (one in ${data.stride} of the recording)` : ""}: drag, or use the arrow keys</label>
 <button type="button" id="frame-back" aria-label="Previous frame">‹</button>
 <input type="range" id="frame" min="0" max="${last}" step="1" value="${data.first}">
 <button type="button" id="frame-on" aria-label="Next frame">›</button>

@@ -43,7 +43,7 @@ export function renderTerminal(analysis: Analysis, options: TerminalOptions): st
   const paint = painter(options.colour);
   const blocks = [
     heading(result, width, paint),
-    numbers(result, paint),
+    numbers(result, width, paint),
     howFound(result, width),
     reasons(result, width, paint),
     options.report === undefined ? [] : [labelled("Report", options.report)],
@@ -69,7 +69,7 @@ function heading(result: Result, width: number, paint: Paint): string[] {
   return [...subject, ...verdict.map((line) => paint(line, `1;${COLOUR[level]}`))];
 }
 
-function numbers(result: Result, paint: Paint): string[] {
+function numbers(result: Result, width: number, paint: Paint): string[] {
   const names = Object.keys(QUANTITY) as QuantityName[];
   return names.map((name) => {
     const quantity = result.quantities[name];
@@ -77,7 +77,9 @@ function numbers(result: Result, paint: Paint): string[] {
     if (quantity === null) return `  ${symbol}  ${missing}`;
     const text = `${quantityText(quantity)} ${unitText(quantity.unit)}`;
     const interval = quantity.upper_limit === true ? "95 % upper limit" : `95 %: ${intervalText(quantity)}`;
-    return `  ${symbol}  ${paint(text.padEnd(25), "1")} ${interval.padEnd(26)} ${sourceText(name, quantity)}`.trimEnd();
+    // the source is the first to go where the terminal is narrow; the report has it too
+    const source = width < 78 ? "" : sourceText(name, quantity);
+    return `  ${symbol}  ${paint(text.padEnd(25), "1")} ${interval.padEnd(26)} ${source}`.trimEnd();
   });
 }
 

@@ -22,6 +22,8 @@ export interface ViewerData {
   readonly low: number;
   readonly step: number;
   readonly frames: readonly ViewerFrame[];
+  /** 1 where every frame is shown, 2 where every second one is, … */
+  readonly stride: number;
   /** Place in `frames` that is shown first. */
   readonly first: number;
 }
@@ -46,7 +48,9 @@ export function viewerData(analysis: Analysis, deflate: Deflate): { data: Viewer
   const { stack, spots, result } = analysis;
   const side = Math.min(MOST_SIDE, Math.max(LEAST_SIDE, Math.floor(Math.sqrt(MOST_CELLS / stack.frames))));
   const region = regionOf(stack, spots, stack.kind === "trace" ? MOST_TRACE_CELLS : side);
-  const shown = shownFrames(result.frames, Math.floor(MOST_CELLS / (region.columns * region.rows)));
+  const most = Math.max(1, Math.floor(MOST_CELLS / (region.columns * region.rows)));
+  const stride = Math.max(1, Math.ceil(stack.frames / most));
+  const shown = result.frames.filter((_, place) => place % stride === 0);
   const values = readCells(stack, region, shown);
   const { low, step, bytes } = quantise(values, leastStep(stack, spots, region));
   const { detector, space } = stack.acquisition;
@@ -60,17 +64,12 @@ export function viewerData(analysis: Analysis, deflate: Deflate): { data: Viewer
       darkVariance: (detector.readNoise / detector.gain) ** 2,
       low,
       step,
+      stride,
       frames: shown.map((row) => describeFrame(row, spots[row.index] ?? null, result.frames.length)),
       first: Math.max(0, firstUsed),
     },
     cells: base64(deflate(bytes)),
   };
-}
-
-/** Every frame, or every second, third, … where there are too many for one page. */
-function shownFrames(frames: readonly FrameRow[], most: number): FrameRow[] {
-  const stride = Math.max(1, Math.ceil(frames.length / Math.max(1, most)));
-  return frames.filter((_, place) => place % stride === 0);
 }
 
 function readCells(stack: Stack, region: Region, shown: readonly FrameRow[]): Float64Array {

@@ -17,14 +17,12 @@ export async function frameViewer(): Promise<void> {
   const levels = await inflate(element("viewer-cells").textContent ?? "");
   const slider = element<HTMLInputElement>("frame");
   const sameScale = element<HTMLInputElement>("same-scale");
-  const lightRamp = ramp((s) => [
-    0.13 + 0.85 * s,
-    0.035 + 0.13 * Math.sin(Math.PI * s ** 0.8),
-    285 - 190 * s,
-  ]);
+  // lightness rises evenly along the first ramp and falls evenly to both sides of the second, so that they are read
+  // by lightness alone where hues cannot be told apart; both stay inside sRGB, or they would kink where they are cut
+  const lightRamp = ramp((s) => [0.16 + 0.81 * s, 0.03 + 0.1 * Math.sin(Math.PI * s ** 0.8), 280 + 175 * s]);
   const residualRamp = ramp((s) => {
     const far = Math.abs(2 * s - 1);
-    return [0.97 - 0.5 * far, 0.005 + 0.135 * far, s < 0.5 ? 250 : 50];
+    return [0.97 - 0.47 * far, 0.003 + 0.115 * far, s < 0.5 ? 250 : 50];
   });
 
   /** Cells of every frame, as 16-bit levels. */
@@ -251,17 +249,22 @@ export async function frameViewer(): Promise<void> {
     const high = Math.max(...points, ...curve, low + 1e-9) * 1.05;
     const origin = along === "x" ? left : top;
     const position = (i: number) => (origin + (i + 0.5) * bin - 0.5) * pixel;
-    const [w, h, x0, y0] = [420, 190, 52, 160];
+    const [w, h, x0, y0] = [420, 214, 58, 168];
     const px = (i: number) => x0 + ((w - x0 - 10) * (i + 0.5)) / points.length;
     const py = (value: number) => y0 - ((y0 - 10) * (value - low)) / (high - low);
     const parts = [shape("rect", { x: x0, y: 10, width: w - x0 - 10, height: y0 - 10, class: "axes" })];
     const label = (x: number, y: number, text: string, anchor: string) =>
       parts.push(shape("text", { x, y, "text-anchor": anchor }, text));
-    label(x0 - 6, py(low) + 4, short(low), "end");
-    label(x0 - 6, py(high / 1.05) + 4, short(high / 1.05), "end");
-    label(x0, h - 14, short(position(0)), "start");
-    label(w - 10, h - 14, short(position(points.length - 1)), "end");
-    label((x0 + w - 10) / 2, h - 14, `${along} (µm)`, "middle");
+    for (const value of ticks(low, high)) {
+      parts.push(shape("line", { x1: x0 - 4, x2: x0, y1: py(value), y2: py(value), class: "axes" }));
+      label(x0 - 7, py(value) + 4, short(value), "end");
+    }
+    for (const value of ticks(position(0), position(points.length - 1))) {
+      const x = px((value - position(0)) / (bin * pixel));
+      parts.push(shape("line", { x1: x, x2: x, y1: y0, y2: y0 + 4, class: "axes" }));
+      label(x, y0 + 18, short(value), "middle");
+    }
+    label((x0 + w - 10) / 2, h - 4, `${along} (µm)`, "middle");
     points.forEach((value, i) => {
       parts.push(shape("circle", { cx: px(i), cy: py(value), r: 2, class: "data" }));
     });
@@ -277,12 +280,21 @@ export async function frameViewer(): Promise<void> {
   }
 
   function short(value: number): string {
-    if (value === 0) return "0";
+    const size = Math.abs(value);
     const text =
-      Math.abs(value) >= 1000 || Math.abs(value) < 0.01
+      size !== 0 && (size >= 1e6 || size < 0.001)
         ? value.toExponential(1)
-        : String(Number(value.toPrecision(3)));
-    return text.replace("-", "−");
+        : String(Number(value.toPrecision(size >= 1000 ? 6 : 3)));
+    return (size >= 1000 && size < 1e6 ? String(Math.round(value)) : text).replace("-", "−");
+  }
+
+  /** Round numbers between two ends, three to seven of them. */
+  function ticks(low: number, high: number): number[] {
+    const raw = (high - low) / 5;
+    const power = 10 ** Math.floor(Math.log10(raw));
+    const step = ([1, 2, 5, 10].find((factor) => factor * power >= raw) ?? 10) * power;
+    const first = Math.ceil(low / step);
+    return Array.from({ length: Math.floor(high / step) - first + 1 }, (_, i) => (first + i) * step);
   }
 
   function show(): void {

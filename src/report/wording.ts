@@ -27,15 +27,15 @@ export const QUANTITY: Readonly<Record<QuantityName, { symbol: string; name: str
 export const TRANSPORT_LAW: Readonly<Record<TransportLaw, string>> = {
   line: "straight line",
   power_law: "power law",
-  arrest: "arrest",
-  broken_line: "line that breaks",
+  arrest: "law of arrest",
+  broken_line: "broken line",
 };
 
 export const DECAY_LAW: Readonly<Record<DecayLaw, string>> = {
   exponential: "one exponential",
   two_exponentials: "two exponentials",
   stretched: "stretched exponential",
-  annihilation: "annihilation",
+  annihilation: "decay with annihilation",
 };
 
 const FROM: Readonly<Record<Quantity["from"], string>> = {

@@ -16,8 +16,15 @@ const unfinished = new Set<string>();
 
 /** Removes what an interrupted write left behind; for a handler of interrupts and for the end of the process. */
 export function discardUnfinished(): void {
-  for (const path of unfinished) rmSync(path, { force: true });
+  const paths = [...unfinished];
   unfinished.clear();
+  for (const path of paths) {
+    try {
+      rmSync(path, { force: true });
+    } catch {
+      // a name the disk refuses was never written; whatever stopped the write is what the user must hear about
+    }
+  }
 }
 
 /**
