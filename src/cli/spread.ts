@@ -1,0 +1,60 @@
+import { analyse } from "../outcome/analyse.ts";
+import type { Analysis, AnalysisOptions } from "../outcome/analysis.ts";
+import { renderTerminal } from "../report/terminal.ts";
+import { writeReports } from "../report/write.ts";
+import { discardUnfinished } from "../report/write-whole.ts";
+import { openStack } from "../stack/open.ts";
+import type { Stack } from "../stack/stack.ts";
+import { seedFrom, windowFrom } from "./arguments.ts";
+import { checkFolder, writing } from "./folder.ts";
+import { uninterrupted } from "./interrupt.ts";
+import { showProgress } from "./progress.ts";
+import { openOptions, type SettingOptions } from "./settings.ts";
+import { ExitCode, textWidth, wantsColour } from "./shell.ts";
+
+export interface SpreadOptions extends SettingOptions {
+  readonly output?: string;
+  readonly from?: string;
+  readonly to?: string;
+  readonly seed?: string;
+  readonly json?: boolean;
+  readonly quiet?: boolean;
+}
+
+/** `gleamwalk spread`: one recording to D, τ, L and μ, with files to keep and a summary to read. */
+export async function spread(file: string, options: SpreadOptions): Promise<ExitCode> {
+  const seed = seedFrom(options.seed);
+  const wanted = { ...windowFrom(options.from, options.to), ...(seed === undefined ? {} : { seed }) };
+  const folder = options.output ?? `${withoutEnding(file)}.gleamwalk`;
+  await checkFolder(folder, "-o");
+
+  const stack = await openStack(file, openOptions(options));
+  const analysis = analyseWatched(stack, wanted, options.quiet === true ? null : process.stderr);
+  await writing(folder, "-o", () => uninterrupted(() => writeReports(analysis, folder), discardUnfinished));
+
+  if (options.json === true) process.stdout.write(`${JSON.stringify(analysis.result, null, 2)}\n`);
+  else if (options.quiet !== true) process.stdout.write(summary(analysis, folder));
+  return analysis.result.verdict.level === "unsound" ? ExitCode.unsound : ExitCode.done;
+}
+
+function analyseWatched(stack: Stack, wanted: AnalysisOptions, stream: NodeJS.WriteStream | null): Analysis {
+  const progress = showProgress(stream);
+  try {
+    return analyse(stack, { ...wanted, onProgress: progress.update });
+  } finally {
+    progress.end();
+  }
+}
+
+function summary(analysis: Analysis, folder: string): string {
+  return renderTerminal(analysis, {
+    colour: wantsColour(process.stdout),
+    width: textWidth(process.stdout),
+    report: `${folder}/report.html`,
+  });
+}
+
+/** NAME of NAME.tif, NAME.tiff and NAME.ome.tif. */
+function withoutEnding(file: string): string {
+  return file.replace(/(?:\.ome)?\.tiff?$/i, "");
+}
