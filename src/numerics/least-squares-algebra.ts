@@ -1,4 +1,4 @@
-import { Matrix, QrDecomposition, SingularValueDecomposition } from "ml-matrix";
+import { Matrix, QrDecomposition, SingularValueDecomposition, solve } from "ml-matrix";
 import type { Point, WhitenedProblem } from "./least-squares-problem.ts";
 import { factorCholesky, solveFactored } from "./linear-algebra.ts";
 
@@ -86,14 +86,30 @@ export class NormalEquations {
   }
 }
 
-/** The free columns of J, each scaled to norm 1, as a matrix with at least as many rows as columns. */
-function unitColumns(task: WhitenedProblem, jacobian: readonly Float64Array[], free: readonly number[]) {
-  const norms = free.map((j) => Math.sqrt(dot(jacobian[j]!, jacobian[j]!)) || 1);
-  const matrix = new Matrix(Math.max(task.m, free.length), free.length);
+/** J = QR of the free parameters, with the columns of J scaled to norm 1. */
+interface Triangle {
+  readonly free: readonly number[];
+  readonly norms: readonly number[];
+  /** R, k×k for k free parameters. */
+  readonly r: Matrix;
+  /** Qᵀr of the residuals, length k. */
+  readonly right: readonly number[];
+}
+
+/** R and Qᵀr at once, as the QR factor of [J r]. */
+function triangleAt(task: WhitenedProblem, point: Point, jacobian: readonly Float64Array[]): Triangle {
+  const free = freeParameters(task, point, gradientOf(point, jacobian));
+  const columns = free.map((j) => jacobian[j]!);
+  const norms = columns.map((column) => Math.sqrt(dot(column, column)) || 1);
+  const k = free.length;
+  const matrix = new Matrix(Math.max(task.m, k + 1), k + 1);
   for (let i = 0; i < task.m; i++) {
-    for (let k = 0; k < free.length; k++) matrix.set(i, k, jacobian[free[k]!]![i]! / norms[k]!);
+    for (let c = 0; c < k; c++) matrix.set(i, c, columns[c]![i]! / norms[c]!);
+    matrix.set(i, k, point.residuals[i]!);
   }
-  return { matrix, norms };
+  const upper = new QrDecomposition(matrix).upperTriangularMatrix;
+  const right = Array.from({ length: k }, (_, row) => upper.get(row, k));
+  return { free, norms, r: k > 0 ? upper.subMatrix(0, k - 1, 0, k - 1) : new Matrix(0, 0), right };
 }
 
 /** Below this fraction of the largest, a singular value of the scaled J is noise of its derivatives. */
@@ -101,12 +117,14 @@ function rankTolerance(task: WhitenedProblem): number {
   return task.hasJacobian ? 1e-13 : 1e-10;
 }
 
-interface GaussNewtonStep {
+export interface GaussNewtonStep {
+  /** The parameters after the step. */
   readonly parameters: Float64Array;
   /** Length of the step in standard errors. */
   readonly offset: number;
   /** Its largest change of a parameter, relative to that parameter. */
   readonly relativeChange: number;
+  readonly triangle: Triangle;
 }
 
 /** The undamped step of the free parameters by QR, which does not square the condition number. */
@@ -115,49 +133,43 @@ export function gaussNewtonStep(
   point: Point,
   jacobian: readonly Float64Array[],
 ): GaussNewtonStep {
+  const triangle = triangleAt(task, point, jacobian);
+  const { free, norms, r, right } = triangle;
   const parameters = point.parameters.slice();
-  const free = freeParameters(task, point, gradientOf(point, jacobian));
-  if (free.length === 0) return { parameters, offset: 0, relativeChange: 0 };
-  const { matrix, norms } = unitColumns(task, jacobian, free);
-  const qr = new QrDecomposition(matrix);
-  const diagonal = qr.upperTriangularMatrix.diagonal().map(Math.abs);
+  if (free.length === 0) return { parameters, offset: 0, relativeChange: 0, triangle };
+  const diagonal = r.diagonal().map(Math.abs);
   if (!(Math.min(...diagonal) > rankTolerance(task) * Math.max(...diagonal))) {
-    return { parameters, offset: Number.POSITIVE_INFINITY, relativeChange: Number.POSITIVE_INFINITY };
+    const never = Number.POSITIVE_INFINITY;
+    return { parameters, offset: never, relativeChange: never, triangle };
   }
-  const right = new Matrix(matrix.rows, 1);
-  for (let i = 0; i < task.m; i++) right.set(i, 0, point.residuals[i]!);
-  const step = qr.solve(right).to1DArray();
-  free.forEach((j, k) => {
-    parameters[j]! += step[k]! / norms[k]!;
+  const step = solve(r, Matrix.columnVector([...right])).to1DArray();
+  free.forEach((j, c) => {
+    parameters[j]! += step[c]! / norms[c]!;
   });
-  const moved = matrix.mmul(Matrix.columnVector(step)).to1DArray();
-  const length = Math.sqrt(moved.reduce((sum, value) => sum + value * value, 0) / free.length);
-  const deviation = task.residualDeviation(point.chi2);
+  // ‖J·step‖ = ‖Qᵀr‖.
+  const length = Math.sqrt(right.reduce((sum, value) => sum + value * value, 0) / free.length);
   return {
     parameters,
-    offset: length === 0 ? 0 : length / deviation,
+    offset: length === 0 ? 0 : length / task.residualDeviation(point.chi2),
     relativeChange: task.relativeChange(point.parameters, parameters),
+    triangle,
   };
 }
 
 /**
- * s²(JᵀJ)⁻¹ from J = QR and the singular values of R. A parameter with a share in a direction of no information is
- * undetermined: Infinity on the diagonal, zeros beside it.
+ * s²(JᵀJ)⁻¹ from the singular values of R. A parameter with a share in a direction of no information is undetermined:
+ * Infinity on the diagonal, zeros beside it.
  */
 export function covarianceAt(
   task: WhitenedProblem,
   point: Point,
-  jacobian: readonly Float64Array[],
+  { free, norms, r }: Triangle,
 ): { covariance: Float64Array; atBound: number[]; undetermined: number[] } {
   const { n } = task;
   const covariance = new Float64Array(n * n);
-  const free = freeParameters(task, point, gradientOf(point, jacobian));
   const atBound = Array.from({ length: n }, (_, j) => j).filter((j) => !free.includes(j));
   if (free.length === 0) return { covariance, atBound, undetermined: [] };
-  const { matrix, norms } = unitColumns(task, jacobian, free);
-  const { diagonal, rightSingularVectors: v } = new SingularValueDecomposition(
-    new QrDecomposition(matrix).upperTriangularMatrix,
-  );
+  const { diagonal, rightSingularVectors: v } = new SingularValueDecomposition(r);
   const floor = rankTolerance(task) * Math.max(...diagonal);
   const informed = free.map((_, c) => diagonal[c]! > floor);
   const lost = (k: number) => informed.some((known, c) => !known && Math.abs(v.get(k, c)) > 1e-3);

@@ -38,7 +38,7 @@ export class WhitenedProblem {
     this.hasSigma = sigma !== undefined;
     this.hasJacobian = problem.jacobian !== undefined;
     this.indices = Float64Array.from({ length: m }, (_, i) => i);
-    this.y = Float64Array.from(problem.y);
+    this.y = new Float64Array(problem.y);
     this.inverseSigma = new Float64Array(m).fill(1);
     if (sigma) for (let i = 0; i < m; i++) this.inverseSigma[i] = 1 / sigma[i]!;
     this.lower = Float64Array.from({ length: n }, (_, j) => problem.lower?.[j] ?? Number.NEGATIVE_INFINITY);
@@ -80,7 +80,7 @@ export class WhitenedProblem {
   }
 
   at(parameters: Float64Array): Point {
-    const prediction = Float64Array.from(this.problem.prediction(parameters.slice()));
+    const prediction = new Float64Array(this.problem.prediction(parameters.slice()));
     const residuals = new Float64Array(this.m);
     let chi2 = 0;
     for (let i = 0; i < this.m; i++) {
@@ -95,7 +95,7 @@ export class WhitenedProblem {
   jacobianAt(point: Point): Float64Array[] {
     const { jacobian } = this.problem;
     const columns = jacobian
-      ? Array.from(jacobian(point.parameters.slice()), (column) => Float64Array.from(column))
+      ? Array.from(jacobian(point.parameters.slice()), (column) => new Float64Array(column))
       : Array.from({ length: this.n }, (_, j) => this.difference(point, j));
     for (const column of columns) {
       for (let i = 0; i < this.m; i++) column[i]! *= this.inverseSigma[i]!;
@@ -114,7 +114,7 @@ export class WhitenedProblem {
     const h = centre + wish - centre;
     const valueAt = (offset: number): Float64Array => {
       p[j] = centre + offset;
-      return Float64Array.from(this.problem.prediction(p));
+      return new Float64Array(this.problem.prediction(p));
     };
     if (centre + h <= this.upper[j]! && centre - h >= this.lower[j]!) {
       const above = valueAt(h);

@@ -1,5 +1,10 @@
 import { levenbergMarquardt } from "ml-levenberg-marquardt";
-import { covarianceAt, gaussNewtonStep, NormalEquations } from "./least-squares-algebra.ts";
+import {
+  covarianceAt,
+  type GaussNewtonStep,
+  gaussNewtonStep,
+  NormalEquations,
+} from "./least-squares-algebra.ts";
 import { type Point, WhitenedProblem } from "./least-squares-problem.ts";
 
 /** A general nonlinear least-squares problem: y_i = f_i(p) + noise of standard deviation σ_i. */
@@ -228,12 +233,16 @@ function refine(task: WhitenedProblem, descent: Descent): LeastSquaresFit {
   }
   // A last step of no digit that matters is as good as none: the case of data that the model meets to rounding.
   const settled = step.relativeChange < 1e-9 ? 0 : Math.min(step.offset, last);
-  return summarise(task, { ...descent, point, jacobian, iterations }, settled);
+  return summarise(task, { ...descent, point, iterations }, step, settled);
 }
 
-function summarise(task: WhitenedProblem, descent: Descent, offset: number): LeastSquaresFit {
-  const { point, jacobian, iterations, end } = descent;
-  const { covariance, atBound, undetermined } = covarianceAt(task, point, jacobian);
+function summarise(
+  task: WhitenedProblem,
+  { point, iterations, end }: Descent,
+  { triangle }: GaussNewtonStep,
+  offset: number,
+): LeastSquaresFit {
+  const { covariance, atBound, undetermined } = covarianceAt(task, point, triangle);
   const minimum = end === "converged" || end === "exact" || offset < 1e-5;
   const parameters = Array.from(point.parameters);
   return {
