@@ -11,12 +11,14 @@ import { quantityOf, textOf, valueFault } from "./values.ts";
  *
  * @param frames in the recording
  * @param sampled the instrument response that `instrument.response` points to, already read
+ * @param largest counts at which the stored samples end, taken for the saturation where none is stated
  * @throws InputFault when something is missing, has no unit or the wrong one, or contradicts the recording
  */
 export function buildAcquisition(
   settings: WrittenSettings,
   frames: number,
   sampled: Response | null,
+  largest: number | null = null,
 ): Acquisition {
   const quantity = (key: string) => quantityOf(settings, key);
   const pixel = pixelOf(settings);
@@ -30,13 +32,13 @@ export function buildAcquisition(
   return {
     space: { pixel, calibration: textOf(settings, "space.calibration"), psfFwhm: quantity("space.psf_fwhm") },
     time: { delays: delays.delays, gate: quantity("time.gate")?.value ?? 0, relativeU: delays.relativeU },
-    detector: detectorOf(settings),
+    detector: detectorOf(settings, largest),
     slit: slit === null ? null : { width: slit },
     period: quantity("excitation.period")?.value ?? null,
     response: sampled ?? (fwhm === null ? null : { kind: "gaussian", fwhm: fwhm.value }),
     sample: sampleOf(settings),
     conditions: conditionsOf(settings),
-    settings: describe(settings),
+    settings: describe(settings, largest),
   };
 }
 
@@ -45,14 +47,14 @@ export function pixelOf(settings: WrittenSettings): Measured | null {
   return quantityOf(settings, "space.pixel");
 }
 
-function detectorOf(settings: WrittenSettings): Detector {
+function detectorOf(settings: WrittenSettings, largest: number | null): Detector {
   const value = (key: string) => quantityOf(settings, `detector.${key}`)?.value;
   return {
     offset: value("offset") ?? PHOTON_COUNTING.offset,
     gain: value("gain") ?? PHOTON_COUNTING.gain,
     readNoise: value("read_noise") ?? PHOTON_COUNTING.readNoise,
     excessNoise: value("excess_noise") ?? PHOTON_COUNTING.excessNoise,
-    saturation: value("saturation") ?? PHOTON_COUNTING.saturation,
+    saturation: value("saturation") ?? largest,
   };
 }
 
@@ -99,7 +101,7 @@ const DEFAULTS: Readonly<Record<string, string>> = {
   "sample.temperature": "not stated: no mobility",
 };
 
-function describe(settings: WrittenSettings): Record<string, Setting> {
+function describe(settings: WrittenSettings, largest: number | null): Record<string, Setting> {
   const described: Record<string, Setting> = {};
   for (const [key, { value, from }] of settings.values) {
     described[key] = { text: typeof value === "object" ? value.join(", ") : String(value), from };
@@ -109,6 +111,10 @@ function describe(settings: WrittenSettings): Record<string, Setting> {
     if (described[key] !== undefined) continue;
     const photonCounting = counting && key.startsWith("detector.");
     described[key] = { text: photonCounting ? `${text} (photon counting)` : text, from: "default" };
+  }
+  if (described["detector.saturation"] === undefined) {
+    const text = largest === null ? "not stated" : `${largest} (the largest number stored)`;
+    described["detector.saturation"] = { text, from: "default" };
   }
   if (described["time.delays"] === undefined && described["time.first"] === undefined) {
     described["time.first"] = { text: "0 ns", from: "default" };

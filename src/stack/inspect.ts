@@ -28,7 +28,7 @@ export interface Inspection {
   readonly max: number;
   readonly pixel_um: number | null;
   readonly delays_ns: readonly number[] | null;
-  /** As stated, or else the largest number that integer samples can hold; null for others. */
+  /** As stated, or else the largest number that 8- or 16-bit integers hold; null for others. */
   readonly saturation: number | null;
   readonly frames: readonly FrameInspection[];
 }
@@ -40,7 +40,7 @@ export interface Inspection {
 export async function inspectStack(path: string, options: OpenOptions = {}): Promise<Inspection> {
   const raw = await openRaw(path, options);
   const delays = raw.axes === "YX" ? null : (delaysOf(raw.settings, raw.frames)?.delays ?? null);
-  const saturation = quantityOf(raw.settings, "detector.saturation")?.value ?? largest(raw.sampleType);
+  const saturation = quantityOf(raw.settings, "detector.saturation")?.value ?? raw.largest;
   const frames = inspectFrames(raw, delays, saturation);
   return {
     file: path,
@@ -82,9 +82,4 @@ function extremes(frame: Float64Array, saturation: number) {
     if (value >= saturation) full++;
   }
   return { sum, min, max, full };
-}
-
-function largest(sampleType: string): number | null {
-  const [, signed, bits] = /^(u?int)(8|16|32)$/.exec(sampleType) ?? [];
-  return bits === undefined ? null : 2 ** (Number(bits) - (signed === "int" ? 1 : 0)) - 1;
 }

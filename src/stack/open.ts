@@ -32,6 +32,8 @@ export interface RawStack extends Recording {
   readonly file: string;
   /** "uint16", "float32", … */
   readonly sampleType: string;
+  /** Counts at which samples of this type end; null where no camera reaches it. */
+  readonly largest: number | null;
   readonly settings: WrittenSettings;
   readonly source: ByteSource;
 }
@@ -55,7 +57,7 @@ export async function openStack(path: string, options: OpenOptions = {}): Promis
   const raw = await open(path, options, false);
   const { kind, frames, height, width, settings } = raw;
   checkFrameCount(path, frames);
-  const acquisition = buildAcquisition(settings, frames, sampledResponse(settings));
+  const acquisition = buildAcquisition(settings, frames, sampledResponse(settings), raw.largest);
   const dark = await darkFrame(settings, raw);
   const check = frameCheck(path, kind, width, acquisition.detector, dark);
   refuseStill(path, raw);
@@ -90,7 +92,14 @@ async function open(path: string, options: OpenOptions, unstatedAllowed: boolean
   const statedIn = originName(settings, settings.values.get("axes"));
   const recording =
     axes === null && unstatedAllowed ? layOutUnstated(pictures) : layOut(path, pictures, axes, statedIn);
-  return { ...recording, file: path, sampleType: pictures.sampleType, settings, source };
+  return {
+    ...recording,
+    file: path,
+    sampleType: pictures.sampleType,
+    largest: pictures.largest,
+    settings,
+    source,
+  };
 }
 
 function writtenSettings(

@@ -36,6 +36,8 @@ describe("opening a recording", () => {
     const stack = await openStack(file);
     expect(stack).toMatchObject({ kind: "map", frames: 4, height: 6, width: 8, dark: null });
     expect(stack.acquisition.time.delays).toEqual([0, 0.5, 1, 1.5]);
+    expect(stack.acquisition.detector.saturation).toBe(65535);
+    expect(stack.acquisition.settings["detector.saturation"]?.from).toBe("default");
     expect(frameOf(stack, 2).slice(0, 10)).toEqual([20, 21, 22, 23, 24, 25, 26, 27, 22, 23]);
     expect(stack.source).toEqual({
       file,

@@ -78,6 +78,12 @@ describe("a TIFF that is not what it says, or says what is not read", () => {
     expect(await messageOf(bytes)).toMatch(/tag 273 of page 2 lies beyond the end of the file/);
   });
 
+  it("two pages with the same pixels", async () => {
+    const bytes = plainRecording();
+    const offset = new DataView(bytes.buffer).getUint32(locate(bytes, 0, 273).entry + 8, true);
+    expect(await messageOf(withTag(bytes, 1, 273, offset + 4))).toMatch(/pages 1 and 2 claim the same bytes/);
+  });
+
   it("directories that run in a circle", async () => {
     const bytes = plainRecording();
     const view = new DataView(bytes.buffer);
@@ -91,8 +97,10 @@ describe("a TIFF that is not what it says, or says what is not read", () => {
     const preview = counts(4, 3, (x) => x);
     const withPreview = withTag(writeTiff([pictures[0]!, preview, ...pictures.slice(1)]), 1, 254, 1);
     expect((await openTiff(memorySource("scan.tif", withPreview))).count).toBe(3);
-    const onlyMarked = withTag(writeTiff(pictures), 1, 254, 1);
-    expect((await openTiff(memorySource("scan.tif", onlyMarked))).count).toBe(3);
+    for (const mark of [1, 4]) {
+      const onlyMarked = withTag(writeTiff(pictures), 1, 254, mark);
+      expect((await openTiff(memorySource("scan.tif", onlyMarked))).count).toBe(3);
+    }
   });
 
   it("every cut of a plain and of a packed recording", async () => {

@@ -37,14 +37,15 @@ const TIGHTEST = 1400;
  * or SubfileType 2 of older files), are passed over. A page marked as smaller that is not smaller is a frame.
  */
 export function frameDirectories(list: readonly Directory[]): readonly Directory[] {
-  const size = (directory: Directory) =>
-    `${first(directory, TAG.width, 0)}×${first(directory, TAG.height, 0)}`;
-  const isMask = (directory: Directory) => (first(directory, TAG.newSubfileType, 0) & 4) !== 0;
-  const isSmaller = (directory: Directory) =>
+  const pixels = (directory: Directory) => first(directory, TAG.width, 0) * first(directory, TAG.height, 0);
+  const isMask = (directory: Directory) =>
+    (first(directory, TAG.newSubfileType, 0) & 4) !== 0 && first(directory, TAG.photometric, 1) === 4;
+  const isMarked = (directory: Directory) =>
     (first(directory, TAG.newSubfileType, 0) & 1) !== 0 || first(directory, TAG.subfileType, 1) === 2;
   const pictures = list.filter((directory) => !isMask(directory));
-  const whole = pictures.find((directory) => !isSmaller(directory)) ?? pictures[0];
-  return pictures.filter((directory) => !isSmaller(directory) || size(directory) === size(whole!));
+  const whole = pictures.find((directory) => !isMarked(directory)) ?? pictures[0];
+  const isSmaller = (directory: Directory) => pixels(directory) > 0 && pixels(directory) < pixels(whole!);
+  return pictures.filter((directory) => !(isMarked(directory) && isSmaller(directory)));
 }
 
 /**

@@ -3,7 +3,7 @@ import { COMPRESSION, type Decompress, decompressorFor } from "./codecs.ts";
 import { declaredImages } from "./description.ts";
 import { damaged, readDirectories } from "./directory.ts";
 import { frameDirectories, type Page, readPage, unpackedBytes, usesPredictor } from "./page.ts";
-import { asSamples, copySamples, unpredicted } from "./samples.ts";
+import { asSamples, copySamples, largestCount, unpredicted } from "./samples.ts";
 import type { ByteSource } from "./source.ts";
 
 /** Pictures of one size, one behind the other, as a TIFF holds them. */
@@ -13,6 +13,8 @@ export interface Pictures {
   readonly width: number;
   /** "uint16", "float32", … */
   readonly sampleType: string;
+  /** See {@link largestCount}. */
+  readonly largest: number | null;
   /** ImageDescription of the first page. */
   readonly description: string;
   /** Copies picture `index` (0-based) into `into`, row-major, as stored. */
@@ -32,12 +34,14 @@ export async function openTiff(source: ByteSource, inflate?: Decompress): Promis
   if (firstPage === undefined) throw damaged(source, "it holds masks only");
   checkAlike(source, pages);
   const all = withContiguous(source, pages);
+  refuseOverlap(source, all);
   const unpack = await decompressors(all, inflate);
   return {
     count: all.length,
     height: firstPage.height,
     width: firstPage.width,
     sampleType: `${firstPage.sample.kind}${8 * firstPage.sample.bytes}`,
+    largest: largestCount(firstPage.sample),
     description: firstPage.description,
     read(index, into) {
       const page = all[index];
@@ -82,6 +86,25 @@ function withContiguous(source: ByteSource, pages: readonly Page[]): readonly Pa
     byteCounts: [frameBytes],
     segmentHeight: page.height,
   }));
+}
+
+/** Pixels that two strips claim belong to one of them at most, so an offset is wrong. */
+function refuseOverlap(source: ByteSource, pages: readonly Page[]): void {
+  const pieces = pages.flatMap((page, number) => {
+    const needed = Math.ceil(page.width / page.segmentWidth) * Math.ceil(page.height / page.segmentHeight);
+    return page.offsets.slice(0, needed).map((start, i) => {
+      // Byte counts of plain strips are sometimes rounded up; what is read counts.
+      const plain = page.compression === COMPRESSION.none;
+      return { number, start, end: start + (plain ? unpackedBytes(page, i) : page.byteCounts[i]!) };
+    });
+  });
+  pieces.sort((a, b) => a.start - b.start);
+  for (let i = 1; i < pieces.length; i++) {
+    const [one, other] = [pieces[i - 1]!, pieces[i]!];
+    if (other.start < one.end) {
+      throw damaged(source, `pages ${one.number + 1} and ${other.number + 1} claim the same bytes`);
+    }
+  }
 }
 
 function isContiguous(page: Page): boolean {

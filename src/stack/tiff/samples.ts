@@ -96,3 +96,12 @@ export function copySamples(samples: Samples, into: Float64Array, at: number): v
     into.set(samples, at);
   }
 }
+
+/**
+ * The largest number that 8- or 16-bit integers hold, where a camera's counts end if not before; null for wider
+ * types, which no camera fills.
+ */
+export function largestCount({ kind, bytes }: SampleType): number | null {
+  if (kind === "float" || bytes > 2) return null;
+  return 2 ** (8 * bytes - (kind === "int" ? 1 : 0)) - 1;
+}
