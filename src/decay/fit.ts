@@ -1,5 +1,5 @@
 import { annihilationLaw } from "./annihilation.ts";
-import { chooseLaw } from "./choose.ts";
+import { type Choice, chooseLaw } from "./choose.ts";
 import { exponentialLaw } from "./exponential.ts";
 import { fitLaw } from "./fit-law.ts";
 import type { Instrument } from "./instrument.ts";
@@ -13,12 +13,10 @@ import { twoExponentialsLaw } from "./two-exponentials.ts";
 
 export type { DecayFit, DecayLaw, DerivedTime, LightData } from "./light.ts";
 
-/** All four laws fitted, null where a law was not worth fitting (richer.ts) or there are too few frames, and the law to believe. */
-export interface Decays {
+/** The laws fitted and the one to believe. */
+export interface Decays extends Choice {
+  /** Null where a law was not worth fitting (richer.ts) or there are too few frames. */
   readonly fits: Record<DecayLaw, DecayFit | null>;
-  readonly preferred: DecayLaw;
-  /** Corrected Akaike weights among the usable laws, summing to 1. */
-  readonly weights: Record<DecayLaw, number>;
 }
 
 /**
