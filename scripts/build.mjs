@@ -1,36 +1,62 @@
 // Builds dist/: the library with its types by tsc, the command line as one bundle by esbuild (a bundle starts in a
-// third of the time), and the JSON Schema of result.json.
+// third of the time), and the JSON Schema of result.json. It is built aside and put in place at the end, so that a
+// build that fails leaves the old one.
 import { execFileSync } from "node:child_process";
-import { rmSync } from "node:fs";
-import { chmod, mkdir, readFile, writeFile } from "node:fs/promises";
+import { chmod, mkdir, rename, rm, writeFile } from "node:fs/promises";
+import { join, resolve } from "node:path";
+import { pathToFileURL } from "node:url";
 import { build } from "esbuild";
 
-rmSync("dist", { recursive: true, force: true });
-execFileSync(process.execPath, ["node_modules/typescript/bin/tsc", "-p", "tsconfig.build.json"], {
-  stdio: "inherit",
-});
+const out = join("node_modules", ".cache", "gleamwalk", `build-${process.pid}`);
+await rm(out, { recursive: true, force: true });
+await mkdir(out, { recursive: true });
+try {
+  await library();
+  await commandLine();
+  await schema();
+  await putInPlace();
+} finally {
+  await rm(out, { recursive: true, force: true });
+}
 
-const { version } = JSON.parse(await readFile("package.json", "utf8"));
-rmSync("dist/cli", { recursive: true, force: true });
-await build({
-  entryPoints: { main: "src/cli/main.ts" },
-  outdir: "dist/cli",
-  bundle: true,
-  splitting: true,
-  platform: "node",
-  format: "esm",
-  target: "node20",
-  minifySyntax: true,
-  legalComments: "none",
-  // some bundled packages still call require() for Node's own modules
-  banner: {
-    js: "import { createRequire as __createRequire } from 'node:module'; const require = __createRequire(import.meta.url);",
-  },
-  define: { __GLEAMWALK_VERSION__: JSON.stringify(version) },
-});
-await chmod("dist/cli/main.js", 0o755);
+function library() {
+  const tsc = join("node_modules", "typescript", "bin", "tsc");
+  const args = ["-p", "tsconfig.build.json", "--outDir", out];
+  execFileSync(process.execPath, [tsc, ...args], { stdio: "inherit" });
+}
 
-const { z } = await import("zod");
-const { resultSchema } = await import("../dist/outcome/result.js");
-await mkdir("dist", { recursive: true });
-await writeFile("dist/result.schema.json", `${JSON.stringify(z.toJSONSchema(resultSchema), null, 2)}\n`);
+async function commandLine() {
+  await rm(join(out, "cli"), { recursive: true, force: true });
+  await build({
+    entryPoints: { main: "src/cli/main.ts" },
+    outdir: join(out, "cli"),
+    bundle: true,
+    splitting: true,
+    platform: "node",
+    format: "esm",
+    target: "node20",
+    minifySyntax: true,
+    minifyWhitespace: true,
+    legalComments: "linked",
+    logLevel: "warning",
+    // some bundled packages still call require() for Node's own modules
+    banner: {
+      js: "import { createRequire as __createRequire } from 'node:module'; const require = __createRequire(import.meta.url);",
+    },
+  });
+  await chmod(join(out, "cli", "main.js"), 0o755);
+}
+
+async function schema() {
+  const { z } = await import("zod");
+  const { resultSchema } = await import(pathToFileURL(resolve(out, "outcome", "result.js")).href);
+  const text = `${JSON.stringify(z.toJSONSchema(resultSchema), null, 2)}\n`;
+  await writeFile(join(out, "result.schema.json"), text);
+}
+
+async function putInPlace() {
+  const old = `${out}-old`;
+  await rename("dist", old).catch(() => {});
+  await rename(out, "dist");
+  await rm(old, { recursive: true, force: true });
+}
