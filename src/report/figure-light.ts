@@ -13,6 +13,7 @@ import {
   keyRow,
   LAW,
   padded,
+  panel,
 } from "./figure-parts.ts";
 import { powerOfTen, superscript } from "./notation.ts";
 import { counted, DECAY_LAW, flagCounts, mainFlag } from "./wording.ts";
@@ -30,10 +31,9 @@ export function lightFigure(drawing: Drawing, analysis: Analysis): string {
     result.frames.map((row) => row.delay_ns),
     0.02,
   );
-  const key = keyRow(drawing, keyEntries(analysis, rows));
-  const panels = [key, { node: lightPanel(drawing, analysis, rows, x), height: HEIGHT }];
-  if (result.decay !== null)
-    panels.push({ node: residualPanel(drawing, analysis, x), height: RESIDUAL_HEIGHT });
+  const key = keyRow(keyEntries(analysis, rows));
+  const panels = [key, panel(lightPanel(drawing, analysis, rows, x), HEIGHT)];
+  if (result.decay !== null) panels.push(panel(residualPanel(drawing, analysis, x), RESIDUAL_HEIGHT));
   return assemble(panels, {
     id: "light",
     title: `Light under the spot, ${result.input.file}`,

@@ -68,54 +68,46 @@ export function common(drawing: Drawing, height: number): Plot.PlotOptions {
   };
 }
 
-/** The row that names the symbols, drawn in pixels; wraps where the entries do not fit. */
-export function keyRow(drawing: Drawing, entries: readonly KeyEntry[]): { node: Element; height: number } {
+/** A panel of a figure: its SVG, and how high it is. */
+export interface Panel {
+  readonly svg: string;
+  readonly height: number;
+}
+
+/** A plot as a panel at the height it was drawn with; its style sheet goes, as the figure has its own fonts. */
+export function panel(node: Element, height: number): Panel {
+  return { svg: node.outerHTML.replace(/<style>[\s\S]*?<\/style>/g, ""), height };
+}
+
+/** The row that names the symbols; wraps where the entries do not fit. */
+export function keyRow(entries: readonly KeyEntry[]): Panel {
   const placed = place(entries);
-  const height = KEY_ROW * (1 + Math.max(0, ...placed.map((entry) => entry.row)));
-  const y = (entry: Placed) => KEY_ROW * entry.row + KEY_ROW / 2;
-  const { plot } = drawing;
-  const node = plot.plot({
-    ...common(drawing, height),
-    margin: 0,
-    marginLeft: 0,
-    marginRight: 0,
-    marginTop: 0,
-    marginBottom: 0,
-    x: { type: "identity" },
-    y: { type: "identity" },
-    axis: null,
-    marks: [
-      ...placed.map((entry) => keyMark(plot, entry, y(entry))),
-      plot.text(placed, {
-        x: (entry: Placed) => entry.x + 14,
-        y,
-        text: "text",
-        textAnchor: "start",
-        fill: INK,
-      }),
-    ],
+  const marks = placed.map((entry) => {
+    const at = `<g transform="translate(${entry.x} ${KEY_ROW * entry.row + KEY_ROW / 2})">`;
+    return `${at}${keyMark(entry)}<text x="14" dy="0.35em">${escapeText(entry.text)}</text></g>`;
   });
-  return { node, height };
+  const height = KEY_ROW * (1 + Math.max(0, ...placed.map((entry) => entry.row)));
+  return { svg: `<svg width="${WIDTH}" height="${height}">${marks.join("")}</svg>`, height };
 }
 
 type Placed = KeyEntry & { readonly x: number; readonly row: number };
 
-function keyMark(plot: Drawing["plot"], entry: Placed, y: number): Plot.Markish {
-  const { x, colour, symbol } = entry;
+/** Outlines about the origin, of the shapes that the plots use for the same names. */
+const OUTLINE: Readonly<Record<SymbolName, string>> = {
+  circle: "M4 0A4 4 0 1 1-4 0A4 4 0 1 1 4 0Z",
+  square: "M-3.5-3.5h7v7h-7Z",
+  triangle: "M0-5.1L4.4 2.6H-4.4Z",
+  diamond: "M0-5.2L3 0L0 5.2L-3 0Z",
+  times: "M-3.4-3.4L3.4 3.4M-3.4 3.4L3.4-3.4",
+  plus: "M-4.5 0H4.5M0-4.5V4.5",
+  asterisk: "M0-4.6V4.6M-4-2.3L4 2.3M-4 2.3L4-2.3",
+};
+
+function keyMark({ symbol, colour, filled, dashed }: KeyEntry): string {
   if (symbol === "line") {
-    const dash = entry.dashed === true ? { strokeDasharray: "4 3" } : {};
-    return plot.link([entry], {
-      x1: [x - 9],
-      x2: [x + 9],
-      y1: [y],
-      y2: [y],
-      stroke: colour,
-      strokeWidth: 2,
-      ...dash,
-    });
+    return `<path d="M-9 0H9" stroke="${colour}" stroke-width="2"${dashed === true ? ' stroke-dasharray="4 3"' : ""}/>`;
   }
-  const fill = entry.filled ? colour : "none";
-  return plot.dot([entry], { x: [x], y: [y], symbol, r: 4, fill, stroke: colour, strokeWidth: 1.3 });
+  return `<path d="${OUTLINE[symbol]}" fill="${filled ? colour : "none"}" stroke="${colour}" stroke-width="1.3"/>`;
 }
 
 /** 6.7 px a character is a safe width at 13 px in the usual sans-serif faces. */
@@ -139,16 +131,15 @@ function place(entries: readonly KeyEntry[]): Placed[] {
  * description for readers who do not see it.
  */
 export function assemble(
-  panels: readonly { readonly node: Element; readonly height: number }[],
+  panels: readonly Panel[],
   words: { readonly title: string; readonly description: string; readonly id: string },
 ): string {
-  const height = panels.reduce((sum, panel) => sum + panel.height, 0);
+  const height = panels.reduce((sum, each) => sum + each.height, 0);
   let top = 0;
-  const inner = panels.map(({ node, height: own }) => {
-    node.setAttribute("y", String(top));
-    node.setAttribute("aria-hidden", "true");
+  const inner = panels.map(({ svg, height: own }) => {
+    const moved = svg.replace("<svg ", `<svg y="${top}" aria-hidden="true" `);
     top += own;
-    return node.outerHTML.replace(/<style>[\s\S]*?<\/style>/g, "");
+    return moved;
   });
   return [
     `<svg xmlns="http://www.w3.org/2000/svg" class="figure" viewBox="0 0 ${WIDTH} ${height}" width="${WIDTH}" height="${height}"`,

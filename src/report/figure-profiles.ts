@@ -2,8 +2,8 @@ import type { Spot } from "../frame/spot.ts";
 import type { Analysis } from "../outcome/analysis.ts";
 import type { FrameRow } from "../outcome/result.ts";
 import type { Stack } from "../stack/stack.ts";
-import { assemble, common, DATA, type Drawing, INK, keyRow, LAW, padded } from "./figure-parts.ts";
-import { photonReader, spotLight } from "./light-map.ts";
+import { assemble, common, DATA, type Drawing, INK, keyRow, LAW, padded, panel } from "./figure-parts.ts";
+import { spotLight } from "./light-map.ts";
 import { plain } from "./notation.ts";
 
 const HEIGHT = 210;
@@ -62,12 +62,12 @@ export function profileFigure(drawing: Drawing, analysis: Analysis): string {
       plot.lineY(model, { fx: "panel", x: "x", y: "light", stroke: LAW, strokeWidth: 2 }),
     ],
   });
-  const key = keyRow(drawing, [
+  const key = keyRow([
     { text: "recorded, ±σ strip", symbol: "circle", colour: DATA, filled: true },
     { text: "fit", symbol: "line", colour: LAW, filled: true },
     { text: "fit of the first", symbol: "line", colour: INK, filled: true, dashed: true },
   ]);
-  return assemble([key, { node, height: HEIGHT }], {
+  return assemble([key, panel(node, HEIGHT)], {
     id: "profiles",
     title: `Cuts through the spot, ${analysis.result.input.file}`,
     description: `Cuts along x through the fitted spot at ${chosen.map(({ row }) => panelName(row)).join(", ")}, each as a share of its fit's peak after the background is taken off, with the fit and the first frame's fit for comparison.`,
@@ -96,7 +96,10 @@ function panelName(row: FrameRow): string {
 
 function cut(stack: Stack, row: FrameRow, spot: Spot, reach: number): { data: Point[]; model: Point[] } {
   const pixel = stack.acquisition.space.pixel.value;
-  const photons = photonReader(stack)(row.index);
+  const { offset, gain } = stack.acquisition.detector;
+  const counts = new Float64Array(stack.height * stack.width);
+  stack.read(row.index, counts);
+  const photons = (at: number) => ((counts[at] ?? 0) - (stack.dark?.[at] ?? offset)) / gain;
   const panel = panelName(row);
   const rows = strip(stack, spot, pixel);
   const peak = sum(rows, (y) => spotLight(spot, stack.kind, pixel, spot.centre[0], y * pixel)) || 1;
@@ -105,9 +108,7 @@ function cut(stack: Stack, row: FrameRow, spot: Spot, reach: number): { data: Po
   const data: Point[] = [];
   for (let start = 0; start + group <= columns.length; start += group) {
     const members = columns.slice(start, start + group);
-    const light = sum(members, (x) =>
-      sum(rows, (y) => (photons[y * stack.width + x] ?? 0) - spot.background),
-    );
+    const light = sum(members, (x) => sum(rows, (y) => photons(y * stack.width + x) - spot.background));
     const middle = ((members[0] ?? 0) + (members.at(-1) ?? 0)) / 2;
     data.push({ panel, x: middle * pixel - spot.centre[0], light: light / group / peak });
   }

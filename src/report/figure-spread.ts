@@ -13,6 +13,7 @@ import {
   keyRow,
   LAW,
   padded,
+  panel,
 } from "./figure-parts.ts";
 import { counted, flagCounts, mainFlag, TRANSPORT_LAW } from "./wording.ts";
 
@@ -87,8 +88,8 @@ export function spreadFigure(drawing: Drawing, analysis: Analysis): string {
       }),
     ],
   });
-  const key = keyRow(drawing, keyEntries(analysis, inside, beyond.length));
-  return assemble([key, { node, height: HEIGHT }], {
+  const key = keyRow(keyEntries(analysis, inside, beyond.length));
+  return assemble([key, panel(node, HEIGHT)], {
     id: "spread",
     title: `Spread of the spot, ${result.input.file}`,
     description: describe(analysis, beyond.length),

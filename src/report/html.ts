@@ -15,7 +15,7 @@ import {
 } from "./page-tables.ts";
 import { viewerHtml } from "./page-viewer.ts";
 import { decayText, spreadText } from "./terminal.ts";
-import type { Deflate } from "./viewer-data.ts";
+import type { Pack } from "./viewer-data.ts";
 import {
   counted,
   intervalText,
@@ -34,16 +34,16 @@ const POLICY =
 /**
  * The report: one self-contained HTML file. It opens with the verdict and the four numbers, then shows the evidence,
  * then everything that is needed to repeat the work.
- * @param deflate packs the frames that the viewer shows (zlib format)
+ * @param pack deflates the frames that the viewer shows, and writes them as base64
  */
-export function renderReport(analysis: Analysis, figures: Figures, deflate: Deflate): string {
+export function renderReport(analysis: Analysis, figures: Figures, pack: Pack): string {
   const { result } = analysis;
   const body = [
     top(result),
     `<main id="main">`,
     verdictSection(result),
     spreadAndLight(result, figures),
-    viewerHtml(analysis, deflate, figures.profiles),
+    viewerHtml(analysis, pack, figures.profiles),
     ruled("How sure", [
       `<p>Standard uncertainties (k = 1). Type A comes from counting statistics through the fits, type B from what is known about pixel size, time base and temperature.</p>`,
       ...budgetTables(result),

@@ -1,6 +1,8 @@
 import type { Result } from "../outcome/result.ts";
 
 const LINE = 110;
+/** No more values than these fit on a line, which saves trying. */
+const MOST_ON_A_LINE = 24;
 
 /**
  * result.json as text: indented, with whatever fits on one line kept there, and one line a frame.
@@ -21,8 +23,10 @@ function refuseNonFinite(value: unknown, path: string): void {
 
 function format(value: unknown, indent: string): string {
   if (typeof value !== "object" || value === null) return JSON.stringify(value);
-  const line = oneLine(value);
-  if (indent.length + line.length <= LINE) return line;
+  if (leaves(value, MOST_ON_A_LINE) <= MOST_ON_A_LINE) {
+    const line = oneLine(value);
+    if (indent.length + line.length <= LINE) return line;
+  }
   const deeper = `${indent}  `;
   if (Array.isArray(value)) {
     const items = value.map((item) => deeper + (isRow(item) ? oneLine(item) : format(item, deeper)));
@@ -32,6 +36,17 @@ function format(value: unknown, indent: string): string {
     ([key, inner]) => `${deeper}${JSON.stringify(key)}: ${format(inner, deeper)}`,
   );
   return `{\n${entries.join(",\n")}\n${indent}}`;
+}
+
+/** How many plain values an object holds, counted no further than just above `most`. */
+function leaves(value: unknown, most: number): number {
+  if (typeof value !== "object" || value === null) return 1;
+  let count = 0;
+  for (const inner of Object.values(value)) {
+    count += leaves(inner, most - count);
+    if (count > most) break;
+  }
+  return count;
 }
 
 /** A line of a table: an object of plain values and short lists of them. */

@@ -1,19 +1,6 @@
 import type { Spot } from "../frame/spot.ts";
 import type { Stack } from "../stack/stack.ts";
 
-/** Reads frames of a stack as detected photons: (counts − dark or offset) / gain. */
-export function photonReader(stack: Stack): (index: number) => Float64Array {
-  const { offset, gain } = stack.acquisition.detector;
-  const counts = new Float64Array(stack.height * stack.width);
-  return (index) => {
-    stack.read(index, counts);
-    for (let k = 0; k < counts.length; k++) {
-      counts[k] = ((counts[k] ?? 0) - (stack.dark === null ? offset : (stack.dark[k] ?? 0))) / gain;
-    }
-    return counts;
-  };
-}
-
 /** The part of the picture that is shown, in pixels, and how many pixels a side make one shown cell. */
 export interface Region {
   readonly left: number;
@@ -68,23 +55,30 @@ function median(values: readonly number[]): number {
   return sorted[Math.floor(sorted.length / 2)] ?? Number.NaN;
 }
 
-/** Adds the photons of a frame up in the cells of a region. */
+/** Counts of each cell in the dark: the dark frame's, or the offset of its pixels. */
+export function darkCells(stack: Stack, region: Region): Float64Array {
+  const cells = new Float64Array(region.columns * region.rows);
+  if (stack.dark === null) return cells.fill(stack.acquisition.detector.offset * region.bin * region.binDown);
+  sumCells(stack.dark, stack.width, region, cells, 0);
+  return cells;
+}
+
+/** Adds up the pixels of a frame in each cell of a region, into `into` from place `at` on. */
 export function sumCells(
-  photons: Float64Array,
+  frame: Float64Array,
   width: number,
   region: Region,
   into: Float64Array,
   at: number,
 ): void {
   const { left, top, columns, rows, bin, binDown } = region;
-  for (let row = 0; row < rows; row++) {
+  for (let y = 0; y < rows * binDown; y++) {
+    const row = at + Math.floor(y / binDown) * columns;
+    let pixel = (top + y) * width + left;
     for (let column = 0; column < columns; column++) {
       let sum = 0;
-      for (let dy = 0; dy < binDown; dy++) {
-        const start = (top + row * binDown + dy) * width + left + column * bin;
-        for (let dx = 0; dx < bin; dx++) sum += photons[start + dx] ?? 0;
-      }
-      into[at + row * columns + column] = sum;
+      for (const end = pixel + bin; pixel < end; pixel++) sum += frame[pixel] ?? 0;
+      into[row + column] = (into[row + column] ?? 0) + sum;
     }
   }
 }

@@ -2,12 +2,12 @@ import type { Spot } from "../frame/spot.ts";
 import type { Analysis } from "../outcome/analysis.ts";
 import type { FrameRow } from "../outcome/result.ts";
 import type { Stack } from "../stack/stack.ts";
-import { photonReader, type Region, regionOf, sumCells } from "./light-map.ts";
+import { darkCells, type Region, regionOf, sumCells } from "./light-map.ts";
 import { concise, plain } from "./notation.ts";
 import { FLAG } from "./wording.ts";
 
-/** Bytes to fewer bytes that a page's DecompressionStream("deflate") reads (zlib format, RFC 1950). */
-export type Deflate = (bytes: Uint8Array) => Uint8Array;
+/** Packs bytes for the page: the zlib format (RFC 1950) that its DecompressionStream("deflate") reads, as base64. */
+export type Pack = (bytes: Uint8Array) => string;
 
 /** What the page's frame viewer is handed as JSON; the cells themselves follow as base64. */
 export interface ViewerData {
@@ -44,7 +44,7 @@ const LEAST_SIDE = 32;
 const MOST_TRACE_CELLS = 160;
 
 /** Packs the frames for the page: cropped to the spot, cells added up, quantised to a quarter of their noise. */
-export function viewerData(analysis: Analysis, deflate: Deflate): { data: ViewerData; cells: string } {
+export function viewerData(analysis: Analysis, pack: Pack): { data: ViewerData; cells: string } {
   const { stack, spots, result } = analysis;
   const side = Math.min(MOST_SIDE, Math.max(LEAST_SIDE, Math.floor(Math.sqrt(MOST_CELLS / stack.frames))));
   const region = regionOf(stack, spots, stack.kind === "trace" ? MOST_TRACE_CELLS : side);
@@ -68,17 +68,22 @@ export function viewerData(analysis: Analysis, deflate: Deflate): { data: Viewer
       frames: shown.map((row) => describeFrame(row, spots[row.index] ?? null, result.frames.length)),
       first: Math.max(0, firstUsed),
     },
-    cells: base64(deflate(bytes)),
+    cells: pack(bytes),
   };
 }
 
+/** Photons of every cell of every shown frame: (counts − counts in the dark) / gain. */
 function readCells(stack: Stack, region: Region, shown: readonly FrameRow[]): Float64Array {
   const size = region.columns * region.rows;
   const values = new Float64Array(size * shown.length);
-  const photons = photonReader(stack);
+  const counts = new Float64Array(stack.height * stack.width);
+  const dark = darkCells(stack, region);
+  const { gain } = stack.acquisition.detector;
   shown.forEach((row, place) => {
-    sumCells(photons(row.index), stack.width, region, values, place * size);
+    stack.read(row.index, counts);
+    sumCells(counts, stack.width, region, values, place * size);
   });
+  for (let k = 0; k < values.length; k++) values[k] = ((values[k] ?? 0) - (dark[k % size] ?? 0)) / gain;
   return values;
 }
 
@@ -105,11 +110,11 @@ function quantise(values: Float64Array, least: number): { low: number; step: num
   }
   const step = Math.max(least, (high - low) / 65_535);
   const bytes = new Uint8Array(2 * values.length);
-  values.forEach((value, k) => {
-    const level = Math.min(65_535, Math.round((value - low) / step));
+  for (let k = 0; k < values.length; k++) {
+    const level = Math.min(65_535, Math.round(((values[k] ?? 0) - low) / step));
     bytes[k] = level & 255;
     bytes[values.length + k] = level >> 8;
-  });
+  }
   return { low, step, bytes };
 }
 
@@ -139,14 +144,4 @@ function describeFrame(row: FrameRow, spot: Spot | null, total: number): ViewerF
 /** Seven digits are enough to draw with. */
 function short(value: number): number {
   return Number(value.toPrecision(7));
-}
-
-function base64(bytes: Uint8Array): string {
-  const chunk = 0x6000;
-  let text = "";
-  // a multiple of three bytes a chunk, so that the pieces join without padding
-  for (let start = 0; start < bytes.length; start += chunk) {
-    text += btoa(String.fromCharCode(...bytes.subarray(start, start + chunk)));
-  }
-  return text;
 }

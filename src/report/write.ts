@@ -29,7 +29,10 @@ export async function writeReports(analysis: Analysis, directory: string): Promi
     ["result.json", resultJson(analysis.result)],
     ["frames.csv", framesCsv(analysis.result.frames)],
     // level 3: a third of the time of the default for 3 % more bytes
-    ["report.html", renderReport(analysis, figures, (bytes) => deflateSync(bytes, { level: 3 }))],
+    [
+      "report.html",
+      renderReport(analysis, figures, (bytes) => deflateSync(bytes, { level: 3 }).toString("base64")),
+    ],
     ["figures/spread.svg", figures.spread],
     ["figures/light.svg", figures.light],
     ["figures/profiles.svg", figures.profiles],

@@ -3,7 +3,7 @@ import { tmpdir } from "node:os";
 import { delimiter, join } from "node:path";
 import { pathToFileURL } from "node:url";
 import { type Browser, chromium, type Page } from "playwright-core";
-import { afterAll, beforeAll, describe, expect, it } from "vitest";
+import { afterAll, beforeAll, describe, expect, it, vi } from "vitest";
 import { writeReports } from "../../src/report/write.ts";
 import { makeAnalysis } from "../report/fixture.ts";
 
@@ -19,6 +19,9 @@ function findChromium(): string {
   }
   return found;
 }
+
+// a browser on a busy machine of two cores can take seconds to open a page
+vi.setConfig({ testTimeout: 60_000 });
 
 const FLAGS = [
   "--no-sandbox",

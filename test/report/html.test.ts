@@ -8,7 +8,9 @@ import { methodsText } from "../../src/report/methods.ts";
 import { makeAnalysis } from "./fixture.ts";
 
 async function report(analysis: Analysis): Promise<string> {
-  return renderReport(analysis, await renderFigures(analysis), (bytes) => deflateSync(bytes));
+  return renderReport(analysis, await renderFigures(analysis), (bytes) =>
+    deflateSync(bytes).toString("base64"),
+  );
 }
 
 const good = makeAnalysis("good");
