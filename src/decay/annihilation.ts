@@ -1,6 +1,6 @@
 import { gaussLegendre } from "./gauss-legendre.ts";
 import type { Instrument } from "./instrument.ts";
-import type { Law } from "./law.ts";
+import { type Law, lifetimeEdge } from "./law.ts";
 import { type SteadyState, steadyState } from "./steady-state.ts";
 
 /**
@@ -28,6 +28,7 @@ export function annihilationLaw(instrument: Instrument, order: 1 | 2): Law {
     units: ["photons", "ns", "1/ns"],
     positive: [false, true, false],
     headline: 1,
+    edge: (j, end) => (j === 2 ? "no annihilation is seen" : lifetimeEdge(end)),
     evaluate: evaluate(instrument, order),
     survival(p, t) {
       const e = Math.exp(-t / p[1]!);

@@ -1,5 +1,5 @@
 import type { Instrument } from "./instrument.ts";
-import type { Law } from "./law.ts";
+import { type Law, lifetimeEdge } from "./law.ts";
 
 /**
  * One exponential: density n = n₀ e^(−t/τ), light ∝ n^q = A e^(−q·t/τ).
@@ -18,6 +18,7 @@ export function exponentialLaw(instrument: Instrument, order: 1 | 2): Law {
     units: ["photons", "ns"],
     positive: [false, true],
     headline: 1,
+    edge: (_, end) => lifetimeEdge(end),
     evaluate(p, value, [byA, byTau]) {
       const a = p[0]!;
       const tau = p[1]!;

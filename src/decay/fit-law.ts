@@ -127,8 +127,10 @@ function whyUseless(
   covariance: Float64Array | null,
 ): string | null {
   if (fit.atBound.length > 0) {
-    const names = fit.atBound.map((j) => task.law.names[j]).join(" and ");
-    return `${names} ended at the edge of the range that makes sense`;
+    const j = fit.atBound[0]!;
+    const [lower, upper] = [task.lower[j]!, task.upper[j]!];
+    const nearer = Math.abs(parameters[j]! - lower) < Math.abs(parameters[j]! - upper) ? "lower" : "upper";
+    return task.law.edge(j, nearer);
   }
   if (!fit.converged) return fit.reason;
   if (covariance === null) return "the data do not determine every parameter";

@@ -15,8 +15,8 @@ export interface LightData {
   readonly sigma: ArrayLike<number>;
   /**
    * Share of the light that reaches the detector in each frame, by which every law is multiplied; null: all of it.
-   * A slit of width w passes erf(w/(2√2·σ_y(t))). For emission order 2 the light of a spreading spot, ∫n² dA, also
-   * falls as n thins out: on a map by Σ-determinant, √|Σ(0)|/√|Σ(t)|, which belongs here too.
+   * A slit of width w passes erf(w/(2√2·σ_y(t))). For emission order 2 the light of a spreading spot, ∫n² dA ∝
+   * N²/√|Σ|, also falls as n thins out, on a map by √|Σ(0)|/√|Σ(t)| with Σ the density's: that belongs here too.
    */
   readonly transmission: ArrayLike<number> | null;
   /** Light ∝ density^order. */

@@ -32,8 +32,8 @@ export function steadyState(tau: number, rate: number, period: number): SteadySt
     const root = Math.sqrt(Math.max(0, b * b + 4 * c * y));
     const density = b > 0 ? (2 * y) / (b + root) : (root - b) / (2 * c);
     // F(ν) = c ν² + b ν − y = 0, differentiated.
-    const byC = (density * density - density * y) / -root;
-    const byE = -density / -root;
+    const byC = (density * y - density * density) / root;
+    const byE = density / root;
     return {
       density,
       densityByTau: byC * cByTau + byE * eByTau,

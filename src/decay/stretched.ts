@@ -1,7 +1,7 @@
 import { gamma } from "../numerics/distributions.ts";
 import { gaussLegendre } from "./gauss-legendre.ts";
 import type { Instrument } from "./instrument.ts";
-import type { Law } from "./law.ts";
+import { type Law, lifetimeEdge } from "./law.ts";
 
 /**
  * A stretched exponential: density n/n₀ = exp(−(t/τ)^β), light = A (n/n₀)^q; 0 < β < 1 for a spread of rates.
@@ -18,6 +18,10 @@ export function stretchedLaw(instrument: Instrument, order: 1 | 2): Law {
     units: ["photons", "ns", "1"],
     positive: [false, true, true],
     headline: null,
+    edge: (j, end) => {
+      if (j === 1) return lifetimeEdge(end);
+      return end === "upper" ? "beta is 1: one exponential" : "beta is at 0.15, the least that is tried";
+    },
     evaluate: evaluate(instrument, order),
     survival: (p, t) => (t > 0 ? Math.exp(-((t / p[1]!) ** p[2]!)) : 1),
     amplitudeAveraged: (p) => (p[1]! / p[2]!) * gamma(1 / p[2]!),

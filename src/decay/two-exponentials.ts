@@ -1,6 +1,6 @@
 import { accumulation } from "./exponential.ts";
 import type { Instrument } from "./instrument.ts";
-import type { Law } from "./law.ts";
+import { type Law, lifetimeEdge } from "./law.ts";
 
 /**
  * Two exponentials: density n/n₀ = f e^(−t/τ₁) + (1 − f) e^(−t/τ₂), light = A (n/n₀)^q.
@@ -16,6 +16,7 @@ export function twoExponentialsLaw(instrument: Instrument, order: 1 | 2): Law {
     units: ["photons", "1", "ns", "ns"],
     positive: [false, false, true, true],
     headline: null,
+    edge: (j, end) => (j === 1 ? "one of the two shares is zero: one exponential" : lifetimeEdge(end)),
     evaluate: order === 1 ? evaluateSum(instrument) : evaluateSquare(instrument),
     survival: (p, t) => p[1]! * Math.exp(-t / p[2]!) + (1 - p[1]!) * Math.exp(-t / p[3]!),
     amplitudeAveraged: (p) => p[1]! * p[2]! + (1 - p[1]!) * p[3]!,

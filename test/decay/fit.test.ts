@@ -100,6 +100,22 @@ describe("noiseless light gives its law back", () => {
   });
 });
 
+describe("laws that cannot pay are not fitted", () => {
+  // All richer laws are positive mixtures of exponentials; light that falls ever faster is farther from any of them
+  // than from one exponential (Lindsay, Ann. Statist. 11 (1983) 86).
+  it("light that falls ever faster, or exactly as one exponential", () => {
+    const delays = times(30, 0.2);
+    for (const f of [(t: number) => Math.exp(-((t / 3) ** 2)), (t: number) => Math.exp(-t / 3)]) {
+      const { fits, preferred } = fitted(
+        delays,
+        delays.map((t) => 1e3 * f(t)),
+      );
+      expect(preferred).toBe("exponential");
+      expect([fits.two_exponentials, fits.stretched, fits.annihilation]).toEqual([null, null, null]);
+    }
+  });
+});
+
 describe("the averages as integrals of the survival", () => {
   it("hold for annihilation by the trapezoidal rule", () => {
     const delays = times(40, 0.25);
@@ -160,6 +176,12 @@ describe("light that is no decay", () => {
     const { fits } = fitted(delays, [1, -1, 1, -1]);
     expect(fits.exponential!.converged).toBe(false);
     expect(numbersOf(fits.exponential!).every(Number.isFinite)).toBe(true);
+  });
+
+  it("constant light says that no end of the decay is seen", () => {
+    const delays = times(20, 0.5);
+    const light = delays.map(() => 50);
+    expect(fitted(delays, light).fits.exponential!.reason).toMatch(/no end of the decay is seen/);
   });
 
   it("three frames carry one exponential and no other law; two carry none", () => {
