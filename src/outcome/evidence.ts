@@ -6,7 +6,7 @@ import { runsTest } from "../numerics/runs-test.ts";
 import type { LawFit } from "../transport/laws.ts";
 import { fitLine, meanDiffusion } from "../transport/line.ts";
 import { perAxis, perAxisVariance } from "../transport/width.ts";
-import type { Reading } from "./read-recording.ts";
+import type { Reading } from "./reading.ts";
 
 /** An estimate over its standard uncertainty, with both. */
 export interface Sign {

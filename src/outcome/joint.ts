@@ -2,7 +2,7 @@ import type { DecayFit } from "../decay/fit.ts";
 import { birgeFactor } from "../numerics/model-choice.ts";
 import type { LawFit } from "../transport/laws.ts";
 import { meanDiffusion } from "../transport/line.ts";
-import type { Reading } from "./read-recording.ts";
+import type { Reading } from "./reading.ts";
 
 /** The law of spread and the decay together: parameters, covariance, and what they share; µm², ns, photons. */
 export interface Joint {

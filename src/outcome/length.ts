@@ -2,7 +2,7 @@ import type { DecayFit } from "../decay/fit.ts";
 import type { Input } from "../numerics/propagate.ts";
 import type { Joint } from "./joint.ts";
 import { quadratic } from "./joint.ts";
-import type { Reading } from "./read-recording.ts";
+import type { Reading } from "./reading.ts";
 
 const STEPS = 400;
 /** Recombination is followed for this many mean lifetimes. */

@@ -5,7 +5,7 @@ import type { Acquisition } from "../stack/acquisition.ts";
 import type { Derived, Joint } from "./joint.ts";
 import { diffusionOf, quadratic } from "./joint.ts";
 import { squaredLength } from "./length.ts";
-import type { Reading } from "./read-recording.ts";
+import type { Reading } from "./reading.ts";
 import type { Quantity, Result } from "./result.ts";
 
 /** 1 µm²/ns in cm²/s. */

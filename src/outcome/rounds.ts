@@ -17,13 +17,13 @@ import { findStrikes } from "../frame/strikes.ts";
 import { chiSquareUpperTail } from "../numerics/distributions.ts";
 import { InputFault } from "../stack/fault.ts";
 import type { Stack } from "../stack/stack.ts";
-import type { LawFit, TransportLaw } from "../transport/laws.ts";
+import type { LawFit } from "../transport/laws.ts";
 import { fitLaws, preferLaw } from "../transport/laws.ts";
 import type { LineFit } from "../transport/line.ts";
 import { fitLine, meanDiffusion } from "../transport/line.ts";
 import type { Width } from "../transport/width.ts";
 import type { AnalysisOptions } from "./analysis.ts";
-import type { Drift, LightSeries, Reading } from "./read-recording.ts";
+import type { Drift, LightSeries, Reading } from "./reading.ts";
 import { responseEnd } from "./response-end.ts";
 import { transmission } from "./transmission.ts";
 
@@ -33,7 +33,8 @@ const FAINTEST = 2;
 const BRIGHT = 8;
 /** A model is acceptable as a smooth reference where chance gives a worse χ² this often. */
 const ACCEPTABLE = 0.01;
-const MOST_ROUNDS = 8;
+const MOST_ROUNDS = 10;
+const NO_LAWS: Reading["laws"] = { line: null, power_law: null, arrest: null, broken_line: null };
 /** Rounds end when D moves by less than this share of its uncertainty. */
 const STANDSTILL = 0.01;
 
@@ -75,31 +76,40 @@ export class Rounds {
 
   read(): Reading {
     this.scoreAll();
-    const start = this.fitLight();
-    this.smoothLight(start);
+    this.smoothLight(this.fitLight());
     this.fitOwnSpots();
-    let { line, laws } = this.startLine();
-    let preferredLaw: TransportLaw = "line";
-    let decays = start;
+    let line = this.startLine();
+    let law: LawFit | null = null;
+    let laws: Reading["laws"] = NO_LAWS;
+    let decays: Decays | null = null;
     let widths: Width[] = [];
     let before = Number.NaN;
     let rounds = 0;
     for (; rounds < MOST_ROUNDS; ) {
       rounds++;
-      this.models = this.nextModels(line, laws[preferredLaw]);
+      this.models = this.nextModels(line, law);
       this.scoreAll();
       this.flagDim();
       widths = this.readWidths();
       line = this.fitWidths(widths);
-      laws = fitLaws(widths);
-      preferredLaw = preferLaw(laws);
       this.steadyModels();
+      const { value, variance } = meanDiffusion(line);
+      const still = Math.abs(value - before) < STANDSTILL * Math.sqrt(variance);
+      before = value;
+      if (rounds > 1 && !still) continue;
+      // the light moves little once the widths stand: its decay is fitted after the first round and at the end
       decays = this.fitLight();
       this.smoothLight(decays);
-      const { value, variance } = meanDiffusion(line);
-      if (Math.abs(value - before) < STANDSTILL * Math.sqrt(variance)) break;
-      before = value;
+      if (!still) continue;
+      // another law than the line, where one is preferred, takes over as the model and asks for rounds of its own
+      laws = fitLaws(widths);
+      const preferred = preferLaw(laws);
+      const settled = law === null ? preferred === "line" : law.law === preferred;
+      law = preferred === "line" ? null : laws[preferred];
+      if (settled) break;
     }
+    if (laws === NO_LAWS) laws = fitLaws(widths);
+    const preferredLaw = preferLaw(laws);
     const { stack, frames, own, scored, models, flags, times, light, drift } = this;
     return {
       stack,
@@ -212,7 +222,7 @@ export class Rounds {
   }
 
   /** A first line from the bright frames' own widths, weighted by their expected light. */
-  private startLine(): { line: LineFit; laws: Record<TransportLaw, LawFit | null> } {
+  private startLine(): LineFit {
     const { typical, kind } = this.frames;
     const layout = LAYOUT[kind];
     const widths: Width[] = [];
@@ -224,10 +234,9 @@ export class Rounds {
       widths.push({ frame: i, time: this.times[i]!, variance, covariance: covariance.map((c) => c * scale) });
     }
     const line = widths.length >= 4 ? fitLine(widths) : null;
-    const none = { line: null, power_law: null, arrest: null, broken_line: null };
-    if (line !== null) return { line, laws: none };
+    if (line !== null) return line;
     const intercept = layout.variance.map((at) => typical[at]! * this.area);
-    const flat: LineFit = {
+    return {
       intercept,
       diffusion: intercept.map(() => 0),
       covariance: new Float64Array(4 * intercept.length ** 2),
@@ -235,7 +244,6 @@ export class Rounds {
       degreesOfFreedom: 0,
       residuals: [],
     };
-    return { line: flat, laws: none };
   }
 
   private nextModels(line: LineFit, law: LawFit | null): SmoothModels {

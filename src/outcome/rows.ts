@@ -1,6 +1,6 @@
 import { LAYOUT, toSpot } from "../frame/pixel-spot.ts";
 import type { Spot } from "../frame/spot.ts";
-import type { Reading } from "./read-recording.ts";
+import type { Reading } from "./reading.ts";
 import type { FrameRow } from "./result.ts";
 
 /** One row a frame: read against the law where the frame is in the window, its own fit elsewhere. */

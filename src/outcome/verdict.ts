@@ -1,7 +1,7 @@
 import type { Evidence, Sign } from "./evidence.ts";
 import type { Joint } from "./joint.ts";
 import type { Quantities } from "./quantities.ts";
-import type { Reading } from "./read-recording.ts";
+import type { Reading } from "./reading.ts";
 import type { Result } from "./result.ts";
 
 type Reason = Result["verdict"]["reasons"][number];
@@ -195,7 +195,7 @@ function drift({ evidence }: Case): Reason | null {
 function cutOff({ evidence }: Case): Reason | null {
   if (evidence.clearance >= 3) return null;
   return reason(
-    evidence.clearance < 1.5 ? "unsound" : "caution",
+    evidence.clearance < 1.2 ? "unsound" : evidence.clearance < 2.2 ? "caution" : "note",
     "spot-cut-off",
     `the border of the picture comes as close as ${Math.max(evidence.clearance, 0).toFixed(1)} standard deviations to the centre of the widest spot`,
     "centre the spot or record a larger field; what lies outside is taken from the model alone",
