@@ -80,6 +80,11 @@ describe("opening a recording", () => {
     folder.put("line-dark.tif", writeTiff([counts(3, 4, (x, t) => 90 + 10 * x + t)]));
     folder.put("line.toml", `axes = "TX"\n${LEAST_TOML}[detector]\ndark = "line-dark.tif"\n`);
     expect([...((await openStack(trace)).dark ?? [])]).toEqual([91.5, 101.5, 111.5]);
+    const turned = folder.put("turned.tif", writeTiff([counts(4, 3, (t, x) => 200 + x + t)]));
+    const dark = folder.put("turned-dark.tif", writeTiff([counts(4, 3, (t, x) => 90 + 10 * x + t)]));
+    const overrides = { "space.pixel": "0.1 um", "time.step": "1 ns", "detector.dark": dark };
+    const stack = await openStack(turned, { axes: "XT", overrides });
+    expect([...(stack.dark ?? [])]).toEqual([91.5, 101.5, 111.5]);
   });
 
   it("reads the instrument response beside the acquisition file", async () => {
