@@ -46,7 +46,8 @@ export function writeTiff(pictures: readonly Picture[], options: WriteOptions = 
     const tags = tagsOf(pictures[index]!, at, strip.length, options.deflate !== undefined);
     at += even(strip.length);
     view.setUint32(pointer, at, true);
-    const described = index === 0 && text !== null ? { offset: HEADER_BYTES, length: text.length } : null;
+    const described =
+      index === 0 && text !== null ? { value: descriptionValue(text), length: text.length } : null;
     at = writeDirectory(view, at, tags, described);
     pointer = at - 4;
   }
@@ -73,10 +74,10 @@ function writeDirectory(
   view: DataView,
   at: number,
   tags: readonly Tag[],
-  description: { offset: number; length: number } | null,
+  description: { value: number; length: number } | null,
 ): number {
   const entries: [number, number, number, number][] = tags.map(([tag, type, value]) => [tag, type, 1, value]);
-  if (description !== null) entries.push([DESCRIPTION_TAG, ASCII, description.length, description.offset]);
+  if (description !== null) entries.push([DESCRIPTION_TAG, ASCII, description.length, description.value]);
   entries.sort((a, b) => a[0] - b[0]);
   view.setUint16(at, entries.length, true);
   for (const [i, [tag, type, count, value]] of entries.entries()) {
@@ -109,13 +110,15 @@ function stripOf({ width, height, data }: Picture, deflate: WriteOptions["deflat
   return deflate === undefined ? bytes : deflate(bytes);
 }
 
-/** The end mark included, and padded so that it never fits inside its directory entry. */
+/** The end mark included. */
 function asciiBytes(text: string): Uint8Array {
-  const bytes = new TextEncoder().encode(`${text}\0`);
-  if (bytes.length > 4) return bytes;
-  const padded = new Uint8Array(5);
-  padded.set(bytes);
-  return padded;
+  return new TextEncoder().encode(`${text}\0`);
+}
+
+/** Where the description lies; up to four bytes stand in the directory entry itself. */
+function descriptionValue(bytes: Uint8Array): number {
+  if (bytes.length > 4) return HEADER_BYTES;
+  return bytes.reduce((value, byte, i) => value + byte * 256 ** i, 0);
 }
 
 /** Offsets in a TIFF are even. */
