@@ -98,11 +98,26 @@ describe("the layout", () => {
 
 describe("the public face", () => {
   test("the pure entry point exports these names and no others", () => {
-    expect(Object.keys(library).sort()).toEqual(["InputFault", "version"]);
+    expect(Object.keys(library).sort()).toEqual([
+      "InputFault",
+      "acquisitionDefaults",
+      "analyse",
+      "framesCsv",
+      "memoryStack",
+      "picturesOf",
+      "readScenario",
+      "renderFigures",
+      "renderReport",
+      "renderTerminal",
+      "resultSchema",
+      "synthesise",
+      "version",
+      "writeTiff",
+    ]);
   });
 
   test("the Node entry point adds files: reading a recording, writing a report", () => {
-    expect(Object.keys(node).sort()).toEqual(["inspectStack", "openRaw", "openStack"]);
+    expect(Object.keys(node).sort()).toEqual(["inspectStack", "openRaw", "openStack", "writeReports"]);
   });
 
   test("the version is the package's", () => {
