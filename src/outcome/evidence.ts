@@ -1,5 +1,5 @@
-import { LAYOUT } from "../frame/pixel-spot.ts";
 import { referenceAt } from "../frame/references.ts";
+import { backgroundScatter } from "../frame/scatter.ts";
 import { shapeScore } from "../frame/shape.ts";
 import { chiSquareUpperTail } from "../numerics/distributions.ts";
 import { runsTest } from "../numerics/runs-test.ts";
@@ -28,7 +28,7 @@ export interface Evidence {
   readonly runsP: number;
   /** Light before the pulse over the light right after it; null without frames before the pulse. */
   readonly glow: Sign | null;
-  /** Scatter of the pixels over the detector's stated noise: Pearson's χ² over its degrees of freedom. */
+  /** Scatter of the background's pixels over the detector's stated noise: Pearson's χ² over its degrees of freedom. */
   readonly scatter: Sign;
   /** Displacement of the centre over the window, in standard deviations of the spot. */
   readonly drift: Sign;
@@ -116,14 +116,27 @@ function glowOf({ light, flags, widths }: Reading): Sign | null {
   return { value: sum / weights / first, u: 1 / Math.sqrt(weights) / first };
 }
 
-function scatterOf({ widths, scored, frames }: Reading): Sign {
+/** Frames asked for the scatter of their background; more would say the same. */
+const ASKED = 16;
+
+function scatterOf({ widths, models, frames }: Reading): Sign {
   let chi2 = 0;
   let pixels = 0;
-  for (const { frame } of widths) {
-    chi2 += scored[frame]!.pearson;
-    pixels += scored[frame]!.pixels - LAYOUT[frames.kind].count;
+  let variance = 0;
+  const step = Math.max(1, Math.floor(widths.length / ASKED));
+  for (let k = 0; k < widths.length; k += step) {
+    const { frame } = widths[k]!;
+    const one = backgroundScatter(
+      frames.kind,
+      frames.patches[frame]!,
+      referenceAt(frames, models, frame),
+      frames.noise,
+    );
+    chi2 += one.chi2;
+    pixels += one.pixels;
+    variance += one.variance;
   }
-  return { value: chi2 / pixels, u: Math.sqrt(2 / pixels) };
+  return pixels === 0 ? { value: 1, u: 1 } : { value: chi2 / pixels, u: Math.sqrt(variance) / pixels };
 }
 
 function driftOf({ drift, models, widths }: Reading, from: number, to: number): Sign {

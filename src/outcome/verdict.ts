@@ -38,6 +38,8 @@ function reason(level: Level, code: string, text: string, advice: string): Reaso
 
 const percent = (share: number): string => `${(100 * share).toPrecision(2)} %`;
 
+const chance = (p: number): string => (p < 1e-9 ? "below 1e-9" : p.toExponential(0));
+
 /** Whether the later half of the window moves less than the earlier one, surely. */
 function slowsDown({ early, late }: Evidence): boolean {
   return early.value - late.value > SURE * Math.hypot(early.u, late.u);
@@ -53,7 +55,7 @@ function lawOfSpread(seen: Case): Reason | null {
     return reason(
       "unsound",
       "line-does-not-fit",
-      `no law of spread describes the widths (probability ${evidence.lawP.toExponential(0)} for the ${named(reading.preferredLaw)}); the uncertainties are widened by ${seen.joint.spreadBirge.toFixed(1)}, which cannot make up for a wrong law`,
+      `no law of spread describes the widths (probability ${chance(evidence.lawP)} for the ${named(reading.preferredLaw)}); the uncertainties are widened by ${seen.joint.spreadBirge.toFixed(1)}, which cannot make up for a wrong law`,
       "look at the residuals over delay; restrict the window with --from and --to to where the spread is regular, or repeat at lower excitation",
     );
   }
@@ -101,7 +103,7 @@ function annihilationOrTraps(seen: Case): Reason[] {
   return found;
 }
 
-function annihilation({ reading, joint }: Case): Reason {
+function annihilation({ reading, joint, evidence }: Case): Reason {
   const index = joint.decay?.law === "annihilation" ? joint.decay.names.indexOf("k_n0") : -1;
   const rate = index >= 0 ? joint.decay!.parameters[index]! : null;
   const variance = reading.models.variance(reading.widths[0]!.frame);
@@ -117,19 +119,22 @@ function annihilation({ reading, joint }: Case): Reason {
       ? ""
       : `; at the start it would fake about ${percent(Math.min(fake, 9.9))} of the apparent D`;
   return reason(
-    fake !== null && fake > 0.2 ? "unsound" : "caution",
+    (fake !== null && fake > 0.2) || fallsBy(evidence) > 0.3 ? "unsound" : "caution",
     "annihilation-suspected",
     `the spot has a flat top, the light falls faster at first, and the early motion dies out: excitons annihilate each other${size}`,
     "repeat at a tenth of the pulse energy, or extrapolate D to zero fluence; a larger spot at the same pulse energy does not help",
   );
 }
 
+/** The share of the early D that the late half has lost, 0 where that is not sure. */
+function fallsBy(evidence: Evidence): number {
+  return slowsDown(evidence) && evidence.early.value > 0 ? 1 - evidence.late.value / evidence.early.value : 0;
+}
+
 function traps({ evidence }: Case): Reason {
   const { early, late } = evidence;
-  const stopped =
-    late.value < 0.5 * early.value && early.value - late.value > SURE * Math.hypot(early.u, late.u);
   return reason(
-    stopped ? "unsound" : "caution",
+    fallsBy(evidence) > 0.5 ? "unsound" : "caution",
     "traps-suspected",
     `a narrow core stands on a broad foot while the later frames move less (late D ${(10 * late.value).toPrecision(2)} after ${(10 * early.value).toPrecision(2)} cm²/s): trapped excitons light up and stay where they are`,
     "restrict the window to the early frames with --to, and compare spots, temperatures and excitation: traps fill at higher density and empty at higher temperature",
@@ -261,7 +266,7 @@ function decay({ reading, joint }: Case): Reason | null {
     return reason(
       "caution",
       "decay-does-not-fit",
-      `no decay law describes the light (probability ${fit.pValue.toExponential(0)}); the lifetime's uncertainty is widened by ${joint.decayBirge.toFixed(1)}`,
+      `no decay law describes the light (probability ${chance(fit.pValue)}); the lifetime's uncertainty is widened by ${joint.decayBirge.toFixed(1)}`,
       "check that the laser power was steady from frame to frame, and give the response and the period if they matter",
     );
   }
@@ -279,7 +284,7 @@ function runs({ evidence }: Case): Reason | null {
   return reason(
     "caution",
     "residuals-run",
-    `the residuals of the widths keep their sign for longer than chance allows (runs test, probability ${evidence.runsP.toExponential(0)})`,
+    `the residuals of the widths keep their sign for longer than chance allows (runs test, probability ${chance(evidence.runsP)})`,
     "something varies slowly over delay: focus, laser power or a law that is not quite right",
   );
 }
