@@ -1,4 +1,4 @@
-import { coordinate, frequency, type Grid } from "./grid.ts";
+import { coordinate, type Grid } from "./grid.ts";
 import { hasSlit, type Recording } from "./recording.ts";
 
 /** Modes weaker than this share of the total are left out of the sums. */
@@ -23,35 +23,21 @@ export function lightPerPixel(
   const { columns, rows, pixelX, pixelY, psfVariance } = recording;
   const { nx, ny, hx, hy } = grid;
   const [lastX, lastY] = lastModes(grid, spectrum);
-  const alongX = phases(
-    columns,
-    pixelX,
-    centre[0],
-    lastX + 1,
-    (k) => frequency(k, nx, hx),
-    psfVariance,
-    nx * hx,
-  );
-  // negative frequencies along y come first
-  const alongY = phases(
-    rows,
-    pixelY,
-    centre[1],
-    2 * lastY + 1,
-    (j) => ((j - lastY) * 2 * Math.PI) / (ny * hy),
-    psfVariance,
-    ny * hy,
-  );
+  const stepX = (2 * Math.PI) / (nx * hx);
+  const stepY = (2 * Math.PI) / (ny * hy);
+  const alongX = phases(columns, pixelX, centre[0], lastX + 1, stepX, psfVariance);
+  const alongY = phases(rows, pixelY, centre[1], lastY + 1, stepY, psfVariance);
+  const pairs = pairsAlongY(spectrum, ny, lastX, lastY);
   const frame = new Float64Array(columns * rows);
   const sums = new Float64Array(2 * (lastX + 1));
   for (let iy = 0; iy < rows; iy++) {
-    sumAlongY(sums, spectrum, ny, lastY, alongY, iy);
+    sumAlongY(sums, pairs, alongY, lastY, iy);
     for (let ix = 0; ix < columns; ix++) {
       let light = 0;
-      for (let k = 0; k <= lastX; k++) {
-        const at = 2 * (ix * (lastX + 1) + k);
-        const both = k === 0 || 2 * k === nx ? 1 : 2;
-        light += both * (sums[2 * k]! * alongX[at]! - sums[2 * k + 1]! * alongX[at + 1]!);
+      let at = 2 * ix * (lastX + 1);
+      for (let k = 0; k < sums.length; k += 2) {
+        light += sums[k]! * alongX[at]! - sums[k + 1]! * alongX[at + 1]!;
+        at += 2;
       }
       frame[iy * columns + ix] = Math.max(light / (nx * ny), 0);
     }
@@ -59,26 +45,50 @@ export function lightPerPixel(
   return frame;
 }
 
+/**
+ * F(kx, ky) and F(kx, −ky) belong to conjugate phases, so four real numbers a pair do: their sum, and i times their
+ * difference. Columns kx > 0 count twice, for −kx.
+ */
+function pairsAlongY(spectrum: Float64Array, ny: number, lastX: number, lastY: number): Float64Array {
+  const pairs = new Float64Array(4 * (lastX + 1) * (lastY + 1));
+  for (let kx = 0; kx <= lastX; kx++) {
+    const both = kx === 0 ? 1 : 2;
+    for (let ky = 0; ky <= lastY; ky++) {
+      const plus = 2 * (kx * ny + ky);
+      const minus = 2 * (kx * ny + ny - ky);
+      const reMinus = ky === 0 ? 0 : spectrum[minus]!;
+      const imMinus = ky === 0 ? 0 : spectrum[minus + 1]!;
+      const at = 4 * (kx * (lastY + 1) + ky);
+      pairs[at] = both * (spectrum[plus]! + reMinus);
+      pairs[at + 1] = both * (spectrum[plus + 1]! + imMinus);
+      pairs[at + 2] = -both * (spectrum[plus + 1]! - imMinus);
+      pairs[at + 3] = both * (spectrum[plus]! - reMinus);
+    }
+  }
+  return pairs;
+}
+
 function sumAlongY(
   sums: Float64Array,
-  spectrum: Float64Array,
-  ny: number,
-  lastY: number,
+  pairs: Float64Array,
   alongY: Float64Array,
+  lastY: number,
   iy: number,
 ): void {
-  const count = 2 * lastY + 1;
-  for (let k = 0; 2 * k < sums.length; k++) {
+  const first = 2 * iy * (lastY + 1);
+  let at = 0;
+  for (let k = 0; k < sums.length; k += 2) {
     let re = 0;
     let im = 0;
-    for (let j = 0; j < count; j++) {
-      const at = 2 * (k * ny + ((j - lastY + ny) % ny));
-      const p = 2 * (iy * count + j);
-      re += spectrum[at]! * alongY[p]! - spectrum[at + 1]! * alongY[p + 1]!;
-      im += spectrum[at]! * alongY[p + 1]! + spectrum[at + 1]! * alongY[p]!;
+    for (let p = first; p < first + 2 * (lastY + 1); p += 2) {
+      const cos = alongY[p]!;
+      const sin = alongY[p + 1]!;
+      re += pairs[at]! * cos + pairs[at + 2]! * sin;
+      im += pairs[at + 1]! * cos + pairs[at + 3]! * sin;
+      at += 4;
     }
-    sums[2 * k] = re;
-    sums[2 * k + 1] = im;
+    sums[k] = re;
+    sums[k + 1] = im;
   }
 }
 
@@ -88,10 +98,10 @@ function phases(
   size: number,
   centre: number,
   modes: number,
-  q: (mode: number) => number,
+  step: number,
   psfVariance: number,
-  side: number,
 ): Float64Array {
+  const side = (2 * Math.PI) / step;
   const table = new Float64Array(2 * pixels * modes);
   for (let i = 0; i < pixels; i++) {
     const middle = Number.isFinite(size) ? i * size - centre : 0;
@@ -100,13 +110,11 @@ function phases(
     const to = Math.min(middle + size / 2, side / 2);
     if (to <= from) continue;
     for (let k = 0; k < modes; k++) {
-      const frequencyHere = q(k);
-      const half = (frequencyHere * (to - from)) / 2;
+      const q = k * step;
+      const half = (q * (to - from)) / 2;
       const weight =
-        (to - from) *
-        (half === 0 ? 1 : Math.sin(half) / half) *
-        Math.exp(-0.5 * psfVariance * frequencyHere ** 2);
-      const angle = (frequencyHere * (from + to)) / 2;
+        (to - from) * (half === 0 ? 1 : Math.sin(half) / half) * Math.exp(-0.5 * psfVariance * q ** 2);
+      const angle = (q * (from + to)) / 2;
       table[2 * (i * modes + k)] = weight * Math.cos(angle);
       table[2 * (i * modes + k) + 1] = weight * Math.sin(angle);
     }
@@ -127,7 +135,8 @@ function lastModes({ nx, ny }: Grid, spectrum: Float64Array): [x: number, y: num
       lastY = Math.max(lastY, Math.min(ky, ny - ky));
     }
   }
-  return [lastX, Math.min(lastY, ny / 2 - 1)];
+  // the highest frequency has no partner of the other sign; a resolved spot has nothing there
+  return [Math.min(lastX, nx / 2 - 1), Math.min(lastY, ny / 2 - 1)];
 }
 
 /**

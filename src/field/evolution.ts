@@ -38,7 +38,6 @@ export class Evolution {
   readonly #flows = new Map<number, LinearFlow>();
   #age = 0;
   #peak: number;
-  #steps = 0;
 
   /** @param tolerance relative error of the densities that the step is chosen for */
   constructor(medium: Medium, start: Start, grid: Grid, tolerance: number) {
@@ -60,21 +59,28 @@ export class Evolution {
     return this.#age;
   }
 
-  /** Steps taken so far. */
-  get steps(): number {
-    return this.#steps;
+  /** Largest density of free excitons. */
+  get peak(): number {
+    return this.#peak;
   }
 
-  /** Moves on to the given time since the last pulse. */
-  advance(to: number): void {
+  /**
+   * Moves on to the given time since the last pulse.
+   * @param watch called after each step; steps are then short enough to be interpolated between (see DenseLight)
+   */
+  advance(to: number, watch?: () => void): void {
     while (this.#age < to) {
       const remaining = to - this.#age;
-      const count = Math.max(1, Math.ceil(remaining / this.#longestStep() - 1e-9));
+      const longest = watch === undefined ? this.#longestStep() : this.#longestWatchedStep();
+      const count = Math.max(1, Math.ceil(remaining / longest - 1e-9));
       // a few equal steps share one table of factors before the bound is looked at again
       const batch = Math.min(count, 4);
       const h = remaining / count;
-      for (let i = 0; i < batch; i++) this.#step(h);
-      this.#age = batch === count ? to : this.#age + batch * h;
+      for (let i = 1; i <= batch; i++) {
+        this.#step(h);
+        this.#age = i === count ? to : this.#age + h;
+        watch?.();
+      }
     }
   }
 
@@ -92,7 +98,6 @@ export class Evolution {
   }
 
   #step(h: number): void {
-    this.#steps++;
     if (this.#medium.annihilation === 0) {
       this.#split(h, this.free, this.caught);
       return;
@@ -144,16 +149,25 @@ export class Evolution {
   }
 
   #longestStep(): number {
-    const { diffusion, annihilation, capture } = this.#medium;
-    if (annihilation === 0) return Infinity;
-    const [dxx, dxy, dyy] = diffusion;
-    const sigma = spreadCovariance(this.#start.covariance, diffusion, this.#age);
-    // tr(DΣ⁻¹): how fast diffusion changes the density at the centre
-    const spreading = Math.abs(dxx * sigma[2] - 2 * dxy * sigma[1] + dyy * sigma[0]) / determinant(sigma);
-    const meeting = annihilation * this.#peak;
-    const other = spreading + capture;
+    const { meeting, spreading } = this.#rates();
+    const other = spreading + this.#medium.capture;
     const fourth = meeting * other * (meeting + other) ** 2;
     return fourth === 0 ? Infinity : (this.#tolerance / (ERROR_SCALE * fourth)) ** 0.25;
+  }
+
+  #longestWatchedStep(): number {
+    const { meeting, spreading } = this.#rates();
+    const interpolated = (30 * this.#tolerance) ** 0.25 / (meeting + spreading + this.#medium.capture);
+    return Math.min(this.#longestStep(), interpolated);
+  }
+
+  /** Relative changes of the density at the centre by annihilation, k n, and by diffusion, tr(DΣ⁻¹). */
+  #rates(): { meeting: number; spreading: number } {
+    const { diffusion, annihilation } = this.#medium;
+    const [dxx, dxy, dyy] = diffusion;
+    const sigma = spreadCovariance(this.#start.covariance, diffusion, this.#age);
+    const spreading = Math.abs(dxx * sigma[2] - 2 * dxy * sigma[1] + dyy * sigma[0]) / determinant(sigma);
+    return { meeting: annihilation * this.#peak, spreading };
   }
 }
 

@@ -1,3 +1,11 @@
+import {
+  determinant,
+  type Medium,
+  peakDensity,
+  removalRate,
+  type Start,
+  spreadCovariance,
+} from "./medium.ts";
 import { nodesOver } from "./quadrature.ts";
 
 /** Light at a time after the latest pulse, with its weight in a frame's mean over the gate. */
@@ -15,19 +23,23 @@ export interface Exposure {
  * @param delays gate openings, ns
  * @param gate length of each gate, ns
  * @param period time between pulses, ns, or null
- * @param rate fastest relative change of the light, 1/ns
+ * @param rate relative change of the light at an age, 1/ns, falling with age (see `changeRate`)
  */
 export function exposures(
   delays: readonly number[],
   gate: number,
   period: number | null,
-  rate: number,
+  rate: (age: number) => number,
 ): Exposure[] {
   const list = delays.flatMap((delay, frame) =>
     gate === 0
       ? instant(delay, frame, period)
       : pieces(delay, delay + gate, period).flatMap(({ from, to }) =>
-          nodesOver(from, to, rate).map(({ at, weight }) => ({ frame, age: at, weight: weight / gate })),
+          nodesOver(from, to, rate(from)).map(({ at, weight }) => ({
+            frame,
+            age: at,
+            weight: weight / gate,
+          })),
         ),
   );
   return list.sort((a, b) => a.age - b.age);
@@ -48,4 +60,18 @@ function pieces(from: number, to: number, period: number | null): { from: number
     if (end > start) list.push({ from: start, to: end });
   }
   return list;
+}
+
+/**
+ * How fast the light changes at an age, 1/ns: decay and capture, spreading, tr(DΣ(t)⁻¹), and annihilation, which no
+ * spot outruns: k n ≤ 1/(1/(k n₀) + t).
+ */
+export function changeRate(medium: Medium, start: Start): (age: number) => number {
+  const [dxx, dxy, dyy] = medium.diffusion;
+  const meeting = medium.annihilation * peakDensity(start);
+  return (age) => {
+    const [xx, xy, yy] = spreadCovariance(start.covariance, medium.diffusion, age);
+    const spreading = Math.abs(dxx * yy - 2 * dxy * xy + dyy * xx) / determinant([xx, xy, yy]);
+    return removalRate(medium) + 2 * spreading + meeting / (1 + meeting * age);
+  };
 }

@@ -1,5 +1,5 @@
 import type { Covariance } from "../frame/spot.ts";
-import { type Exposure, exposures } from "./exposure.ts";
+import { changeRate, type Exposure, exposures } from "./exposure.ts";
 import { determinant, type Medium, type Start, spreadCovariance } from "./medium.ts";
 import { nodesOver } from "./quadrature.ts";
 import {
@@ -28,15 +28,7 @@ const FORGOTTEN = 1e-12;
  * @param medium with annihilation = capture = 0
  */
 export function gaussianLight(medium: Medium, start: Start, recording: Recording): MeanFrames {
-  const [dxx, dxy, dyy] = medium.diffusion;
-  const [sxx, sxy, syy] = start.covariance;
-  const spreading = Math.abs(dxx * syy - 2 * dxy * sxy + dyy * sxx) / determinant(start.covariance);
-  const list = exposures(
-    recording.delays,
-    recording.gate,
-    recording.period,
-    1 / medium.lifetime + 2 * spreading,
-  );
+  const list = exposures(recording.delays, recording.gate, recording.period, changeRate(medium, start));
   const components: Component[][] = recording.delays.map(() => []);
   for (const exposure of list) {
     components[exposure.frame]!.push(...spotsAt(exposure, medium, start, recording.period));

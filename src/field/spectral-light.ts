@@ -1,8 +1,8 @@
 import { lightBehindSlit, lightPerPixel } from "./aperture.ts";
-import { exposures } from "./exposure.ts";
+import { changeRate, exposures } from "./exposure.ts";
 import { frequency, type Grid, gridFor, moments } from "./grid.ts";
 import { handedOver, modeRates } from "./linear-flow.ts";
-import { determinant, type Medium, removalRate, type Start } from "./medium.ts";
+import { type Medium, removalRate, type Start } from "./medium.ts";
 import {
   type Accuracy,
   centreOf,
@@ -29,6 +29,7 @@ export function spectralLight(
   const grid = gridFor(start.covariance, medium.diffusion, lastAge(medium, recording), accuracy);
   const rates = modeRates(medium, grid);
   const initial = startSpectrum(grid, start);
+  const negligible = 1e-15 * initial[0]!;
   const transform = new Transform(grid);
   const free = recording.delays.map(() => transform.spectrum());
   const caught = recording.delays.map(() => transform.spectrum());
@@ -43,12 +44,13 @@ export function spectralLight(
     recording.delays,
     recording.gate,
     recording.period,
-    fastestRate(medium, start),
+    changeRate(medium, start),
   )) {
     const light = free[frame]!;
     const dark = caught[frame]!;
     const trapSurvival = Math.exp(-trapRate * age);
     for (let i = 0; i < rates.length; i++) {
+      if (initial[i]! < negligible) continue;
       const survival = Math.exp(-rates[i]! * age);
       const train = pulseTrain(rates[i]!, recording.period);
       const born = weight * initial[i]!;
@@ -115,14 +117,6 @@ export function lastAge(medium: Medium, { delays, gate, period }: Recording): nu
   const last = Math.max(0, ...delays) + gate;
   // a spot older than twelve lifetimes gives less than 1e-5 of the light
   return period === null ? last : Math.max(Math.min(last, period), 12 / removalRate(medium));
-}
-
-/** Fastest relative change of the light at the start, 1/ns. */
-export function fastestRate(medium: Medium, start: Start): number {
-  const [dxx, dxy, dyy] = medium.diffusion;
-  const [sxx, sxy, syy] = start.covariance;
-  const spreading = Math.abs(dxx * syy - 2 * dxy * sxy + dyy * sxx) / determinant(start.covariance);
-  return removalRate(medium) + 2 * spreading;
 }
 
 /** Σ exp(−rate·jT) over all pulses j ≥ 0. */

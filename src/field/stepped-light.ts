@@ -1,9 +1,10 @@
+import { DenseLight } from "./dense-light.ts";
 import { Evolution } from "./evolution.ts";
-import { exposures } from "./exposure.ts";
+import { changeRate, type Exposure, exposures } from "./exposure.ts";
 import { gridFor } from "./grid.ts";
-import { type Medium, peakDensity, type Start } from "./medium.ts";
+import type { Medium, Start } from "./medium.ts";
 import type { Accuracy, MeanFrames, Recording } from "./recording.ts";
-import { collect, fastestRate, lastAge } from "./spectral-light.ts";
+import { collect, lastAge } from "./spectral-light.ts";
 
 const MOST_PULSES = 500;
 
@@ -21,30 +22,51 @@ export function steppedLight(
   const evolution = new Evolution(medium, start, grid, accuracy.tolerance);
   if (recording.period !== null) settle(evolution, recording.period, accuracy.tolerance * 1e-3);
   const { transform } = evolution;
-  const freeFields = recording.delays.map(() => new Float64Array(grid.nx * grid.ny));
+  const free = recording.delays.map(() => transform.spectrum());
   const caught = recording.delays.map(() => transform.spectrum());
-  const wake = recording.delays.map(() => 0);
-  const rate = fastestRate(medium, start) + medium.annihilation * peakDensity(start);
-  for (const { frame, age, weight } of exposures(recording.delays, recording.gate, recording.period, rate)) {
-    evolution.advance(age);
-    addTo(freeFields[frame]!, evolution.free, weight);
-    addTo(caught[frame]!, evolution.caught, weight);
-    wake[frame] = wake[frame]! + weight * Math.exp(-age / medium.trapLifetime);
-  }
+  const list = exposures(recording.delays, recording.gate, recording.period, changeRate(medium, start));
+  const dense = new DenseLight(evolution, medium);
+  let next = 0;
+  const collectStep = () => {
+    dense.stepped();
+    const reached: Exposure[] = [];
+    while (next < list.length && list[next]!.age <= dense.age) reached.push(list[next++]!);
+    for (const [frame, samples] of byFrame(reached)) dense.add(samples, free[frame]!, caught[frame]!);
+  };
+  const last = list.at(-1)?.age ?? 0;
+  // an exposure at the very pulse needs a step behind it too
+  evolution.advance(Math.max(last, Number.MIN_VALUE), collectStep);
   if (recording.period !== null && medium.capture > 0) {
     evolution.advance(recording.period);
-    // caught excitons of all earlier pulses, each like this one: a geometric series
-    const earlier = -1 / Math.expm1(-recording.period / medium.trapLifetime);
-    caught.forEach((spectrum, frame) => {
-      addTo(spectrum, evolution.caught, earlier * wake[frame]!);
-    });
+    addWake(list, evolution.caught, caught, medium.trapLifetime, recording.period);
   }
-  const free = freeFields.map((field) => {
-    const spectrum = transform.spectrum();
-    transform.toSpectrum(field, spectrum);
-    return spectrum;
-  });
   return collect(grid, transform, free, caught, medium.trapLight, recording);
+}
+
+/** Caught excitons of all earlier pulses, each like the last one: a geometric series, emptying with τ_m. */
+function addWake(
+  list: readonly Exposure[],
+  left: Float64Array,
+  caught: readonly Float64Array[],
+  trapLifetime: number,
+  period: number,
+): void {
+  const train = -1 / Math.expm1(-period / trapLifetime);
+  for (const [frame, samples] of byFrame(list)) {
+    const weight = samples.reduce((sum, { age, weight }) => sum + weight * Math.exp(-age / trapLifetime), 0);
+    const spectrum = caught[frame]!;
+    for (let i = 0; i < left.length; i++) spectrum[i] = spectrum[i]! + weight * train * left[i]!;
+  }
+}
+
+function byFrame(list: readonly Exposure[]): Map<number, Exposure[]> {
+  const groups = new Map<number, Exposure[]>();
+  for (const exposure of list) {
+    const group = groups.get(exposure.frame);
+    if (group === undefined) groups.set(exposure.frame, [exposure]);
+    else group.push(exposure);
+  }
+  return groups;
 }
 
 function settle(evolution: Evolution, period: number, tolerance: number): void {
@@ -58,8 +80,4 @@ function settle(evolution: Evolution, period: number, tolerance: number): void {
     before = left;
   }
   evolution.emptyTraps();
-}
-
-function addTo(sum: Float64Array, values: Float64Array, weight: number): void {
-  for (let i = 0; i < sum.length; i++) sum[i] = sum[i]! + weight * values[i]!;
 }

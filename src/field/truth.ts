@@ -1,6 +1,5 @@
 import type { Covariance } from "../frame/spot.ts";
 import type { FrameLight } from "./recording.ts";
-import { DEFAULT_ACCURACY } from "./recording.ts";
 import type { Scenario } from "./scenario.ts";
 import { movingTime } from "./travel.ts";
 
@@ -63,7 +62,7 @@ export function truthOf(scenario: Scenario, light: readonly FrameLight[]): Truth
   const alongAxes = ([xx, , yy]: Covariance) => (map ? (xx + yy) / 2 : xx);
   const d = alongAxes(medium.diffusion);
   const temperature = acquisition.sample.temperature?.value ?? null;
-  const moving = movingTime(medium, scenario.start, DEFAULT_ACCURACY);
+  const moving = movingTime(medium, scenario.start);
   const caught = medium.capture > 0;
   return {
     schema: "gleamwalk.truth/1",
