@@ -9,16 +9,20 @@ const MOST_ON_A_LINE = 24;
  * @throws RangeError naming the key if a number is not finite, which JSON would turn into null without a word
  */
 export function resultJson(result: Result): string {
-  refuseNonFinite(result, "result");
+  const path = findNonFinite(result);
+  if (path !== null) throw new RangeError(`result${path} is not a finite number`);
   return `${format(result, "")}\n`;
 }
 
-function refuseNonFinite(value: unknown, path: string): void {
-  if (typeof value === "number" && !Number.isFinite(value)) {
-    throw new RangeError(`${path} is not a finite number: ${value}`);
+/** The path of the first number that is not finite, as ".key.key"; null where there is none. */
+function findNonFinite(value: unknown): string | null {
+  if (typeof value === "number") return Number.isFinite(value) ? null : "";
+  if (typeof value !== "object" || value === null) return null;
+  for (const key in value) {
+    const path = findNonFinite((value as Record<string, unknown>)[key]);
+    if (path !== null) return `.${key}${path}`;
   }
-  if (typeof value !== "object" || value === null) return;
-  for (const [key, inner] of Object.entries(value)) refuseNonFinite(inner, `${path}.${key}`);
+  return null;
 }
 
 function format(value: unknown, indent: string): string {
@@ -29,7 +33,7 @@ function format(value: unknown, indent: string): string {
   }
   const deeper = `${indent}  `;
   if (Array.isArray(value)) {
-    const items = value.map((item) => deeper + (isRow(item) ? oneLine(item) : format(item, deeper)));
+    const items = value.map((item) => deeper + (isRow(item) ? JSON.stringify(item) : format(item, deeper)));
     return `[\n${items.join(",\n")}\n${indent}]`;
   }
   const entries = defined(value).map(

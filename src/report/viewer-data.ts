@@ -83,7 +83,9 @@ function readCells(stack: Stack, region: Region, shown: readonly FrameRow[]): Fl
     stack.read(row.index, counts);
     sumCells(counts, stack.width, region, values, place * size);
   });
-  for (let k = 0; k < values.length; k++) values[k] = ((values[k] ?? 0) - (dark[k % size] ?? 0)) / gain;
+  for (let start = 0; start < values.length; start += size) {
+    for (let k = 0; k < size; k++) values[start + k] = ((values[start + k] ?? 0) - (dark[k] ?? 0)) / gain;
+  }
   return values;
 }
 
@@ -104,14 +106,15 @@ function leastStep(stack: Stack, spots: readonly (Spot | null)[], region: Region
 function quantise(values: Float64Array, least: number): { low: number; step: number; bytes: Uint8Array } {
   let low = Number.POSITIVE_INFINITY;
   let high = Number.NEGATIVE_INFINITY;
-  for (const value of values) {
+  for (let k = 0; k < values.length; k++) {
+    const value = values[k] ?? 0;
     if (value < low) low = value;
     if (value > high) high = value;
   }
   const step = Math.max(least, (high - low) / 65_535);
   const bytes = new Uint8Array(2 * values.length);
   for (let k = 0; k < values.length; k++) {
-    const level = Math.min(65_535, Math.round(((values[k] ?? 0) - low) / step));
+    const level = Math.min(65_535, Math.floor(((values[k] ?? 0) - low) / step + 0.5));
     bytes[k] = level & 255;
     bytes[values.length + k] = level >> 8;
   }

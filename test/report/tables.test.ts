@@ -45,7 +45,7 @@ describe("resultJson", () => {
   it("keeps a frame on one line", () => {
     const rows = resultJson(result)
       .split("\n")
-      .filter((line) => line.startsWith('    { "index":'));
+      .filter((line) => line.startsWith('    {"index":'));
     expect(rows).toHaveLength(result.frames.length);
   });
 
@@ -53,10 +53,10 @@ describe("resultJson", () => {
     const broken = structuredClone(result);
     broken.quantities.diffusion_coefficient.u = Number.NaN;
     expect(() => resultJson(broken)).toThrow(
-      "result.quantities.diffusion_coefficient.u is not a finite number: NaN",
+      "result.quantities.diffusion_coefficient.u is not a finite number",
     );
     const endless = structuredClone(result);
     endless.frames[3]!.photons = Number.POSITIVE_INFINITY;
-    expect(() => resultJson(endless)).toThrow("result.frames.3.photons is not a finite number: Infinity");
+    expect(() => resultJson(endless)).toThrow("result.frames.3.photons is not a finite number");
   });
 });
