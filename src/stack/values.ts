@@ -79,7 +79,7 @@ export function numbersOf(settings: WrittenSettings, key: string): number[] | nu
 export function valueFault(settings: WrittenSettings, key: string, wrong: string): InputFault {
   const setting = settings.values.get(key);
   const file = originName(settings, setting);
-  const name = key.slice(key.indexOf(".") + 1);
+  const name = setting?.from === "command line" ? key : key.slice(key.indexOf(".") + 1);
   const mend = `write for example ${name} = ${KEY_RULES[key]?.example ?? '"…"'}`;
   return new InputFault(`${file}: ${key} = ${showValue(setting)} ${wrong}; ${mend}`, { file, where: key });
 }
