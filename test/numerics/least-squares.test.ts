@@ -1,5 +1,6 @@
 import { describe, expect, it } from "vitest";
 import { fitLeastSquares, type LeastSquaresProblem } from "../../src/numerics/least-squares.ts";
+import { WhitenedProblem } from "../../src/numerics/least-squares-problem.ts";
 import { fitLine } from "../../src/numerics/linear-fit.ts";
 
 const t = Array.from({ length: 12 }, (_, i) => i / 2);
@@ -107,6 +108,29 @@ describe("fitLeastSquares at bounds", () => {
     });
     expectRelative(fit.parameters.slice(0, 2), fixed.parameters, 1e-8);
     expectRelative(fit.standardErrors.slice(0, 2), fixed.standardErrors, 1e-7);
+  });
+
+  it("holds a parameter at its upper bound alike", () => {
+    const fit = fitLeastSquares({ ...decayProblem, upper: [1e9, 1e9, 40] });
+    const fixed = fitLeastSquares({
+      prediction: (p) => decay(Float64Array.of(p[0]!, p[1]!, 40)),
+      y: counts,
+      start: [500, 0.5],
+    });
+    expect(fit.parameters[2]).toBe(40);
+    expect(fit.atBound).toEqual([2]);
+    expect(fit.converged).toBe(true);
+    expectRelative(fit.parameters.slice(0, 2), fixed.parameters, 1e-8);
+  });
+
+  it.each([
+    ["lower", { lower: [2] }],
+    ["upper", { upper: [2] }],
+  ])("takes derivatives from the inside of the %s bound: 12 for p³ at 2", (_, bounds) => {
+    const problem = { prediction: (p: Float64Array) => [p[0]! ** 3, 0], y: [1, 0], start: [2], ...bounds };
+    const task = new WhitenedProblem(problem, undefined);
+    const [column] = task.jacobianAt(task.at(Float64Array.of(2)));
+    expect(column![0]! / 12).toBeCloseTo(1, 9);
   });
 
   it("leaves a bound again where it started on it", () => {
