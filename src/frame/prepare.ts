@@ -54,7 +54,10 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
       { file: stack.source.file, where: "time.first" },
     );
   }
-  const whole = sumFrames(reader, after);
+  const middle = after.length >> 1;
+  const late = sumFrames(reader, after.slice(middle));
+  const whole = sumFrames(reader, after.slice(0, middle));
+  for (let i = 0; i < whole.length; i++) whole[i]! += late[i]!;
   const first = firstLook(kind, whole, width, height, sumNoise(noise, after.length));
   if (first === null) {
     throw new InputFault(
@@ -62,7 +65,13 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
       { file: stack.source.file },
     );
   }
-  const widest = widestSpot(stack, reader, after, first, noise);
+  const widest = widestSpot(
+    stack,
+    late,
+    (after.length - middle) / after.length,
+    first,
+    sumNoise(noise, after.length - middle),
+  );
   const rectangle = patchAround(kind, first.parameters, widest, REACH * reachFactor, width, height);
 
   const surroundings = surveyBackground(
@@ -108,31 +117,37 @@ function sumNoise(noise: NoiseLaw, count: number): NoiseLaw {
   return { excess: noise.excess, floor: noise.floor * count };
 }
 
-/** Standard deviations (x, y) of the widest of the sum's spot and the later frames' spot, pixels. */
+/**
+ * Standard deviations (x, y) of the widest of the sum's spot and the later frames' spot, pixels.
+ *
+ * @param late sum of the later frames, `share` of all
+ */
 function widestSpot(
   stack: Stack,
-  reader: PhotonReader,
-  after: readonly number[],
+  late: Float64Array,
+  share: number,
   first: PatchFit,
   noise: NoiseLaw,
 ): [number, number] {
   const { kind, width, height } = stack;
-  const late = after.slice(Math.floor(after.length / 2));
-  const picture = sumFrames(reader, late);
-  const patch = cutPatch(picture, width, { x0: 0, y0: 0, width, height });
   const start = first.parameters.slice();
   start[0]! *= 0.3;
-  start[LAYOUT[kind].background]! *= late.length / after.length;
-  const fit = fitPatch(kind, patch, start, sumNoise(noise, late.length));
-  const sure = fit.converged && fit.parameters[0]! ** 2 > 100 * fit.covariance[0]!;
-  const candidates = sure ? [first, fit] : [first];
-  const [vx, vy] = kind === "map" ? [3, 5] : [2, 2];
-  const shift = sure ? Math.abs(fit.parameters[1]! - first.parameters[1]!) : 0;
-  const shiftY = sure && kind === "map" ? Math.abs(fit.parameters[2]! - first.parameters[2]!) : 0;
+  start[LAYOUT[kind].background]! *= share;
+  const sigma = sigmas(kind, first.parameters);
+  const rectangle = patchAround(kind, first.parameters, sigma, 2 * REACH, width, height);
+  const fit = fitPatch(kind, cutPatch(late, width, rectangle), start, noise);
+  if (!fit.converged || fit.parameters[0]! ** 2 < 100 * fit.covariance[0]!) return sigma;
+  const lateSigma = sigmas(kind, fit.parameters);
+  const shift = (axis: number): number =>
+    kind === "trace" && axis === 2 ? 0 : Math.abs(fit.parameters[axis]! - first.parameters[axis]!);
   return [
-    Math.sqrt(Math.max(...candidates.map((c) => c.parameters[vx!]!))) + (2 * shift) / REACH,
-    Math.sqrt(Math.max(...candidates.map((c) => c.parameters[vy!]!))) + (2 * shiftY) / REACH,
+    Math.max(sigma[0], lateSigma[0]) + (2 * shift(1)) / REACH,
+    Math.max(sigma[1], lateSigma[1]) + (2 * shift(2)) / REACH,
   ];
+}
+
+function sigmas(kind: "map" | "trace", p: Parameters): [number, number] {
+  return kind === "map" ? [Math.sqrt(p[3]!), Math.sqrt(p[5]!)] : [Math.sqrt(p[2]!), 0];
 }
 
 function patchAround(

@@ -1,3 +1,6 @@
+import type { Parameters } from "../frame/kernel.ts";
+import type { Patch } from "../frame/patch.ts";
+import { LAYOUT } from "../frame/pixel-spot.ts";
 import { referenceAt } from "../frame/references.ts";
 import { backgroundScatter } from "../frame/scatter.ts";
 import { shapeScore } from "../frame/shape.ts";
@@ -68,20 +71,48 @@ function lineValue(line: Reading["line"]): { value(t: number): number } {
 
 /** Frames with at least this much light over its standard deviation say something about shape. */
 const BRIGHT = 8;
+/** A long stack is asked in this many groups of neighbouring frames, added up: hardly any width is mixed in one. */
+const GROUPS = 32;
 
 function shapeOf(reading: Reading): Sign {
-  const { frames, widths, own, light, models } = reading;
+  const { frames, widths, light } = reading;
+  const bright = widths
+    .map((width) => width.frame)
+    .filter((i) => light.value[i]! >= BRIGHT * light.sigma[i]!);
+  const size = Math.ceil(bright.length / GROUPS);
   let score = 0;
   let information = 0;
-  for (const { frame } of widths) {
-    if (light.value[frame]! < BRIGHT * light.sigma[frame]!) continue;
-    const p = own[frame]?.parameters ?? referenceAt(frames, models, frame);
-    const one = shapeScore(frames.kind, frames.patches[frame]!, p, frames.noise);
+  for (let k = 0; k < bright.length; k += size) {
+    const group = bright.slice(k, k + size);
+    const { patch, spot } = addUp(reading, group);
+    const noise = { excess: frames.noise.excess, floor: group.length * frames.noise.floor };
+    const one = shapeScore(frames.kind, patch, spot, noise);
     score += one.score;
     information += one.information;
   }
   if (information === 0) return { value: 0, u: Number.MAX_VALUE };
   return { value: score / information, u: 1 / Math.sqrt(information) };
+}
+
+/** Neighbouring frames as one: light and background add, centre and width are the means weighted by light. */
+function addUp(
+  { frames, own, models }: Reading,
+  group: readonly number[],
+): { patch: Patch; spot: Parameters } {
+  const spotOf = (i: number): Parameters => own[i]?.parameters ?? referenceAt(frames, models, i);
+  const patches = group.map((i) => frames.patches[i]!);
+  if (group.length === 1) return { patch: patches[0]!, spot: spotOf(group[0]!) };
+  const data = patches[0]!.data.slice();
+  for (const patch of patches.slice(1)) for (let i = 0; i < data.length; i++) data[i]! += patch.data[i]!;
+  const { photons, background } = LAYOUT[frames.kind];
+  const spots = group.map(spotOf);
+  const total = spots.reduce((sum, spot) => sum + spot[photons]!, 0);
+  const spot = spots[0]!.map((_, a) => {
+    const adds = a === photons || a === background;
+    return spots.reduce((sum, each) => sum + each[a]! * (adds ? 1 : each[photons]! / total), 0);
+  });
+  const excluded = [...new Set(patches.flatMap((patch) => patch.excluded))];
+  return { patch: { ...patches[0]!, data, excluded }, spot };
 }
 
 /** D before and after the middle of the slope's information. */

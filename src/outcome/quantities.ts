@@ -89,9 +89,14 @@ function count(reading: Reading, joint: Joint, acquisition: Acquisition): Counte
   if (decay === null) return { diffusion, lifetime: null, length2: null, product: null };
   const spreadOf = (gradient: ArrayLike<number>): number =>
     Math.sqrt(Math.max(quadratic(gradient, joint.decayCovariance), 0));
-  const lifetime = { value: decay.lifetime.value, u: spreadOf(decay.lifetime.gradient) };
   const mean = decay.amplitudeAveraged;
-  const meanLifetime = { value: mean.value, u: spreadOf(mean.gradient) };
+  // where rival laws describe the light as well, their disagreement about the mean lifetime is part of its uncertainty
+  const between = reading.decays?.lawSpread ?? 0;
+  const meanLifetime = { value: mean.value, u: Math.hypot(spreadOf(mean.gradient), between) };
+  const isMean = decay.law === "two_exponentials" || decay.law === "stretched";
+  const lifetime = isMean
+    ? meanLifetime
+    : { value: decay.lifetime.value, u: spreadOf(decay.lifetime.gradient) };
   const n = d.gradient.length;
   let covariance = 0;
   for (let j = 0; j < mean.gradient.length; j++) {

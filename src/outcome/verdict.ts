@@ -98,7 +98,8 @@ function annihilationOrTraps(seen: Case): Reason[] {
   if (flat && (slowing || decaysFastFirst)) found.push(annihilation(seen));
   else if (peaked && (slowing || decaysFastFirst)) found.push(traps(seen));
   else if (slowing && decaysFastFirst && slowsDown(evidence)) {
-    found.push(joint.decay?.law === "annihilation" ? annihilation(seen) : traps(seen));
+    const candidates = [joint.decay?.law, ...(reading.decays?.rivals ?? [])];
+    found.push(candidates.includes("annihilation") ? annihilation(seen) : traps(seen));
   } else if (flat || peaked) found.push(notGaussian(evidence));
   return found;
 }

@@ -1,5 +1,6 @@
 import { chiSquareUpperTail } from "../numerics/distributions.ts";
 import { fitLeastSquares } from "../numerics/least-squares.ts";
+import { solveSymmetric } from "../numerics/linear-algebra.ts";
 import { correctedAkaike } from "../numerics/model-choice.ts";
 import type { Width } from "./width.ts";
 import { perAxis, perAxisVariance } from "./width.ts";
@@ -34,13 +35,13 @@ interface LawForm {
   readonly units: readonly string[];
   value(p: ArrayLike<number>, t: number): number;
   gradient(p: ArrayLike<number>, t: number): number[];
-  starts(guess: Guess): number[][];
-  bounds(guess: Guess): { lower: number[]; upper: number[] };
+  /** Values of the last parameter to scan for a start; the others enter linearly. None: all are linear. */
+  scan(range: Range): number[];
+  bounds(range: Range): { lower: number[]; upper: number[] };
 }
 
-interface Guess {
-  readonly intercept: number;
-  readonly diffusion: number;
+/** First and last time of the window, ns. */
+interface Range {
   readonly first: number;
   readonly last: number;
 }
@@ -54,7 +55,7 @@ const line: LawForm = {
   units: ["µm²", "µm²/ns"],
   value: (p, t) => p[0]! + 2 * p[1]! * t,
   gradient: (_, t) => [1, 2 * t],
-  starts: ({ intercept, diffusion }) => [[intercept, diffusion]],
+  scan: () => [],
   bounds: () => ({ lower: [-FREE, -FREE], upper: [FREE, FREE] }),
 };
 
@@ -69,8 +70,7 @@ const powerLaw: LawForm = {
   units: ["µm²", "µm²/ns^α", ""],
   value: (p, t) => p[0]! + 2 * p[1]! * power(t, p[2]!),
   gradient: (p, t) => [1, 2 * power(t, p[2]!), t > 0 ? 2 * p[1]! * power(t, p[2]!) * Math.log(t) : 0],
-  starts: ({ intercept, diffusion, last }) =>
-    [0.5, 1, 1.7].map((alpha) => [intercept, (diffusion * last) / last ** alpha, alpha]),
+  scan: () => [0.3, 0.5, 0.7, 0.9, 1.15, 1.4, 1.8, 2.3],
   bounds: () => ({ lower: [-FREE, -FREE, 0.05], upper: [FREE, FREE, 3] }),
 };
 
@@ -86,8 +86,7 @@ const arrest: LawForm = {
     const x = t / p[2]!;
     return [1, -2 * p[2]! * Math.expm1(-x), 2 * p[1]! * (-Math.expm1(-x) - x * Math.exp(-x))];
   },
-  starts: ({ intercept, diffusion, last }) =>
-    [0.15, 0.5, 2].map((share) => [intercept, diffusion * (1 + 0.5 / share), share * last]),
+  scan: ({ last }) => [0.05, 0.1, 0.2, 0.35, 0.6, 1, 2, 5].map((share) => share * last),
   // beyond these the arrest is a step at once or a line
   bounds: ({ last }) => ({ lower: [-FREE, -FREE, 0.02 * last], upper: [FREE, FREE, 20 * last] }),
 };
@@ -105,13 +104,8 @@ const brokenLine: LawForm = {
     2 * Math.max(t - p[3]!, 0),
     t > p[3]! ? 2 * (p[1]! - p[2]!) : 0,
   ],
-  starts: ({ intercept, diffusion, first, last }) =>
-    [0.2, 0.4, 0.65].map((share) => [
-      intercept,
-      1.5 * diffusion,
-      0.5 * diffusion,
-      first + share * (last - first),
-    ]),
+  scan: ({ first, last }) =>
+    [0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8].map((share) => first + share * (last - first)),
   bounds: ({ first, last }) => ({
     lower: [-FREE, -FREE, -FREE, first + 0.05 * (last - first)],
     upper: [FREE, FREE, FREE, last - 0.05 * (last - first)],
@@ -135,22 +129,8 @@ export function fitLaws(widths: readonly Width[]): Record<TransportLaw, LawFit |
   const times = widths.map((width) => width.time);
   const y = widths.map(perAxis);
   const sigma = widths.map((width) => Math.sqrt(perAxisVariance(width)));
-  const first = times[0]!;
-  const last = times[times.length - 1]!;
-  let guess: Guess = { intercept: y[0]!, diffusion: 0, first, last };
-  for (const form of FORMS) {
-    const fit = fitForm(form, times, y, sigma, guess);
-    fits[form.law] = fit;
-    if (form.law === "line" && fit !== null) {
-      const floor = Math.sqrt(fit.covariance[3]!);
-      guess = {
-        intercept: fit.parameters[0]!,
-        diffusion: Math.max(Math.abs(fit.parameters[1]!), floor),
-        first,
-        last,
-      };
-    }
-  }
+  const range = { first: times[0]!, last: times.at(-1)! };
+  for (const form of FORMS) fits[form.law] = fitForm(form, times, y, sigma, range);
   return fits;
 }
 
@@ -159,33 +139,32 @@ function fitForm(
   times: readonly number[],
   y: readonly number[],
   sigma: readonly number[],
-  guess: Guess,
+  range: Range,
 ): LawFit | null {
   const n = form.names.length;
   if (times.length < n + 2) return null;
   const columns = Array.from({ length: n }, () => new Float64Array(times.length));
   const prediction = new Float64Array(times.length);
-  const fits = form.starts(guess).map((start) =>
-    fitLeastSquares({
-      prediction: (p) => {
-        for (let i = 0; i < times.length; i++) prediction[i] = form.value(p, times[i]!);
-        return prediction;
-      },
-      jacobian: (p) => {
-        for (let i = 0; i < times.length; i++) {
-          const row = form.gradient(p, times[i]!);
-          for (let j = 0; j < n; j++) columns[j]![i] = row[j]!;
-        }
-        return columns;
-      },
-      y,
-      sigma,
-      start,
-      ...form.bounds(guess),
-      maxIterations: 200,
-    }),
-  );
-  const best = fits.reduce((a, b) => (b.chi2 < a.chi2 ? b : a));
+  const start = bestStart(form, times, y, sigma, range);
+  if (start === null) return null;
+  const best = fitLeastSquares({
+    prediction: (p) => {
+      for (let i = 0; i < times.length; i++) prediction[i] = form.value(p, times[i]!);
+      return prediction;
+    },
+    jacobian: (p) => {
+      for (let i = 0; i < times.length; i++) {
+        const row = form.gradient(p, times[i]!);
+        for (let j = 0; j < n; j++) columns[j]![i] = row[j]!;
+      }
+      return columns;
+    },
+    y,
+    sigma,
+    start,
+    ...form.bounds(range),
+    maxIterations: 200,
+  });
   const { parameters, covariance, chi2 } = best;
   return {
     law: form.law,
@@ -202,6 +181,49 @@ function fitForm(
     value: (t) => form.value(parameters, t),
     gradient: (t) => form.gradient(parameters, t),
   };
+}
+
+/** The best of the scanned shapes, with the linear parameters solved for each (variable projection). */
+function bestStart(
+  form: LawForm,
+  times: readonly number[],
+  y: readonly number[],
+  sigma: readonly number[],
+  range: Range,
+): number[] | null {
+  const shapes = form.scan(range);
+  if (shapes.length === 0) return solveLinear(form, [], times, y, sigma)?.parameters ?? null;
+  let best: { parameters: number[]; chi2: number } | null = null;
+  for (const shape of shapes) {
+    const trial = solveLinear(form, [shape], times, y, sigma);
+    if (trial !== null && (best === null || trial.chi2 < best.chi2)) best = trial;
+  }
+  return best?.parameters ?? null;
+}
+
+function solveLinear(
+  form: LawForm,
+  shape: readonly number[],
+  times: readonly number[],
+  y: readonly number[],
+  sigma: readonly number[],
+): { parameters: number[]; chi2: number } | null {
+  const m = form.names.length - shape.length;
+  const normal = new Float64Array(m * m);
+  const solution = new Float64Array(m);
+  const zero = [...new Array<number>(m).fill(0), ...shape];
+  for (let i = 0; i < times.length; i++) {
+    const basis = form.gradient(zero, times[i]!);
+    const w = 1 / sigma[i]! ** 2;
+    for (let a = 0; a < m; a++) {
+      solution[a]! += w * basis[a]! * y[i]!;
+      for (let b = 0; b <= a; b++) normal[a * m + b]! += w * basis[a]! * basis[b]!;
+    }
+  }
+  if (!solveSymmetric(normal, m, solution)) return null;
+  const parameters = [...solution, ...shape];
+  const chi2 = times.reduce((sum, t, i) => sum + ((y[i]! - form.value(parameters, t)) / sigma[i]!) ** 2, 0);
+  return { parameters, chi2 };
 }
 
 /** How much better, in corrected Akaike units, another law must be before the line is given up. */
