@@ -134,7 +134,9 @@ footer p { max-width: none; margin-bottom: 0.3rem; }
   section { padding: 1rem 0 0; }
   .controls { break-after: avoid; margin-bottom: 0.4rem; }
   .tables table, figure, .number, .reasons li, tr, .quote p, .maps, .beside { break-inside: avoid; }
-  h2, h3, caption { break-after: avoid; }
+  h2, h3, caption, .ruled > p { break-after: avoid; }
+  .number .missing { font-size: 9pt; }
+  #viewer ~ figure .figure { max-width: 26rem; }
   section + section { margin-top: 0.5rem; }
   canvas { print-color-adjust: exact; -webkit-print-color-adjust: exact; }
   details::details-content { content-visibility: visible; height: auto; }

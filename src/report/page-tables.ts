@@ -82,9 +82,9 @@ export function budgetTables(result: Result): string[] {
   const names = ["diffusion_coefficient", "diffusion_length", "mobility"] as const;
   return names.flatMap((name) => {
     const rows = result.budget.filter((row) => row.quantity === name);
-    if (rows.length === 0) return [];
     const quantity = result.quantities[name];
-    const unit = unitText(quantity?.unit ?? "");
+    if (rows.length === 0 || quantity === null) return [];
+    const unit = unitText(quantity.unit);
     const variance = rows.reduce((sum, row) => sum + row.contribution ** 2, 0) || 1;
     const body = rows.map((row) => ({
       cells: [
@@ -104,7 +104,7 @@ export function budgetTables(result: Result): string[] {
       { text: `Share of u (${unit})`, numeric: true },
       { text: "of u²", numeric: true },
     ];
-    const caption = `${QUANTITY[name].name} ${QUANTITY[name].symbol}${quantity === null ? "" : `: u = ${plain(quantity.u, 2)} ${unit}`}`;
+    const caption = `${QUANTITY[name].name} ${QUANTITY[name].symbol}: u = ${plain(quantity.u, 2)} ${unit}`;
     return [scroll(table(columns, body, { caption }), `Uncertainty budget of ${QUANTITY[name].symbol}`)];
   });
 }

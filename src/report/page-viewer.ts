@@ -63,5 +63,5 @@ function cut(id: string, caption: string): string {
 
 /** JSON inside a script element must not be able to close it. */
 function scriptSafe(json: string): string {
-  return json.replaceAll("<", "\\u003c").replaceAll("\u2028", "\\u2028").replaceAll("\u2029", "\\u2029");
+  return json.replaceAll("<", "\\u003c");
 }
