@@ -1,6 +1,8 @@
+import { perAxis } from "../transport/width.ts";
 import type { Evidence, Sign } from "./evidence.ts";
 import type { Joint } from "./joint.ts";
 import type { Quantities } from "./quantities.ts";
+import { CM2_PER_S } from "./quantities.ts";
 import type { Reading } from "./reading.ts";
 import type { Result } from "./result.ts";
 
@@ -9,6 +11,9 @@ type Level = Reason["level"];
 
 /** A departure this many standard deviations long is no chance; some ten signs are looked at in every recording. */
 const SURE = 4;
+
+/** A shape q below this moves no width by a noticeable amount, however sure it is. */
+const HARMLESS = 0.01;
 
 /** Everything the judges look at. */
 interface Case {
@@ -100,31 +105,33 @@ function annihilationOrTraps(seen: Case): Reason[] {
   else if (slowing && decaysFastFirst && slowsDown(evidence)) {
     const candidates = [joint.decay?.law, ...(reading.decays?.rivals ?? [])];
     found.push(candidates.includes("annihilation") ? annihilation(seen) : traps(seen));
-  } else if (flat || peaked) found.push(notGaussian(evidence));
+  } else if ((flat || peaked) && Math.abs(evidence.shape.value) > HARMLESS) found.push(notGaussian(evidence));
   return found;
 }
 
-function annihilation({ reading, joint, evidence }: Case): Reason {
-  const index = joint.decay?.law === "annihilation" ? joint.decay.names.indexOf("k_n0") : -1;
-  const rate = index >= 0 ? joint.decay!.parameters[index]! : null;
-  const variance = reading.models.variance(reading.widths[0]!.frame);
-  const perAxis = variance.length === 3 ? (variance[0]! + variance[2]!) / 2 : variance[0]!;
-  const d =
-    reading.line.diffusion.length === 3
-      ? (reading.line.diffusion[0]! + reading.line.diffusion[2]!) / 2
-      : reading.line.diffusion[0]!;
-  // D appears k·n·σ²/8 too large, methods of the second moment of a Gaussian spot
-  const fake = rate === null ? null : (rate * perAxis) / 8 / Math.max(Math.abs(d), 1e-12);
-  const size =
-    fake === null
-      ? ""
-      : `; at the start it would fake about ${percent(Math.min(fake, 9.9))} of the apparent D`;
+function annihilation({ reading, evidence, quantities }: Case): Reason {
+  const { value, u } = quantities.quantities.diffusion_coefficient;
+  const fake = fakeDiffusion(reading);
+  const share = fake === null || value <= 0 ? null : fake / value;
+  const size = share === null ? "" : `; at the start that fakes about ${percent(share)} of the D given here`;
+  const misses = fake !== null && fake > 2 * u;
   return reason(
-    (fake !== null && fake > 0.2) || fallsBy(evidence) > 0.3 ? "unsound" : "caution",
+    misses || fallsBy(evidence) > 0.3 ? "unsound" : "caution",
     "annihilation-suspected",
     `the spot has a flat top, the light falls faster at first, and the early motion dies out: excitons annihilate each other${size}`,
     "repeat at a tenth of the pulse energy, or extrapolate D to zero fluence; a larger spot at the same pulse energy does not help",
   );
+}
+
+/**
+ * What annihilation adds to the first frame's apparent D, k·n₀·σ²/8 for the second moment of a Gaussian spot (derived
+ * from ∂n/∂t = −k·n²), with k·n₀ from the annihilation law of the light; cm²/s. Null where that law was not fitted.
+ */
+function fakeDiffusion({ decays, models, widths }: Reading): number | null {
+  const fit = decays?.fits.annihilation ?? null;
+  if (fit === null || !fit.converged) return null;
+  const rate = fit.parameters[fit.names.indexOf("k_n0")]!;
+  return (CM2_PER_S * rate * perAxis({ variance: models.variance(widths[0]!.frame) })) / 8;
 }
 
 /** The share of the early D that the late half has lost, 0 where that is not sure. */
