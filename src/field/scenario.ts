@@ -10,7 +10,7 @@ import { checkScenarioKey, isScenarioKey, ScenarioValues } from "./scenario-keys
 
 /** Full width at half maximum of a Gaussian over its standard deviation: 2√(2 ln 2). */
 const FWHM_PER_SIGMA = 2 * Math.sqrt(2 * Math.LN2);
-const MOST_PIXELS = 2 ** 28;
+const MOST_PIXELS = 2 ** 26;
 
 /** A recording to be made up, with everything that is true about it. */
 export interface Scenario {
