@@ -242,7 +242,6 @@ export class Rounds {
       covariance: new Float64Array(4 * intercept.length ** 2),
       chi2: 0,
       degreesOfFreedom: 0,
-      residuals: [],
     };
   }
 

@@ -1,4 +1,5 @@
 import { invertSymmetric } from "../numerics/linear-algebra.ts";
+import { fitLinear } from "../numerics/linear-fit.ts";
 import type { Width } from "./width.ts";
 
 /** Σ(t) = Σ₀ + 2Dt for every component of Σ at once. */
@@ -11,8 +12,6 @@ export interface LineFit {
   readonly covariance: Float64Array;
   readonly chi2: number;
   readonly degreesOfFreedom: number;
-  /** Standardised residuals of each frame's components, whitened by the frame's covariance. */
-  readonly residuals: readonly (readonly number[])[];
 }
 
 /**
@@ -25,50 +24,27 @@ export interface LineFit {
  * @returns null where the widths do not determine a line (fewer than two distinct times)
  */
 export function fitLine(widths: readonly Width[]): LineFit | null {
-  const components = widths[0]?.variance.length ?? 1;
-  const n = 2 * components;
-  const normal = new Float64Array(n * n);
-  const right = new Float64Array(n);
-  const inverses = widths.map((width) => inverted(width.covariance, components));
-  for (const [i, width] of widths.entries()) {
-    const weight = inverses[i]!;
-    const t = 2 * width.time;
+  if (new Set(widths.map((width) => width.time)).size < 2) return null;
+  const components = widths[0]!.variance.length;
+  const rows = widths.length * components;
+  const design = Array.from({ length: 2 * components }, () => new Float64Array(rows));
+  for (const [i, { time }] of widths.entries()) {
     for (let a = 0; a < components; a++) {
-      for (let b = 0; b < components; b++) {
-        const w = weight[a * components + b]!;
-        const y = width.variance[b]!;
-        right[a]! += w * y;
-        right[components + a]! += w * t * y;
-        normal[a * n + b]! += w;
-        normal[a * n + components + b]! += w * t;
-        normal[(components + a) * n + b]! += w * t;
-        normal[(components + a) * n + components + b]! += w * t * t;
-      }
+      design[a]![i * components + a] = 1;
+      design[components + a]![i * components + a] = 2 * time;
     }
   }
-  if (!invertSymmetric(normal, n)) return null;
-  const theta = Array.from({ length: n }, (_, a) =>
-    right.reduce((sum, r, b) => sum + normal[a * n + b]! * r, 0),
-  );
-  const intercept = theta.slice(0, components);
-  const diffusion = theta.slice(components);
-
-  let chi2 = 0;
-  const residuals = widths.map((width, i) => {
-    const residual = width.variance.map((value, a) => value - intercept[a]! - 2 * diffusion[a]! * width.time);
-    const weight = inverses[i]!;
-    for (let a = 0; a < components; a++) {
-      for (let b = 0; b < components; b++) chi2 += residual[a]! * weight[a * components + b]! * residual[b]!;
-    }
-    return residual.map((value, a) => value / Math.sqrt(width.covariance[a * components + a]!));
+  const fit = fitLinear({
+    design,
+    y: widths.flatMap((width) => width.variance),
+    precision: widths.map((width) => inverted(width.covariance, components)),
   });
   return {
-    intercept,
-    diffusion,
-    covariance: normal,
-    chi2,
-    degreesOfFreedom: widths.length * components - n,
-    residuals,
+    intercept: fit.parameters.slice(0, components),
+    diffusion: fit.parameters.slice(components),
+    covariance: fit.covariance,
+    chi2: fit.chi2,
+    degreesOfFreedom: fit.degreesOfFreedom,
   };
 }
 
