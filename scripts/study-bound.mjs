@@ -10,12 +10,22 @@ export function boundsAtTruth(scenario, mean) {
   const truth = mean.truth;
   const used = delays.flatMap((delay, i) => (delay >= 0 ? [i] : []));
   const frames = used.map((i) => frameInformation(scenario, mean, i, width, height, pixel));
-  const line = fitLine(frames.map((f, k) => ({ frame: used[k], time: delays[used[k]], variance: f.variance, covariance: f.widthCovariance })));
+  const line = fitLine(
+    frames.map((f, k) => ({
+      frame: used[k],
+      time: delays[used[k]],
+      variance: f.variance,
+      covariance: f.widthCovariance,
+    })),
+  );
   const n = frames.length;
 
   // light: independent part and what it shares through the line
   const covariance = new Float64Array(n * n);
-  const shift = frames.map((f, k) => [...f.perVariance, ...f.perVariance.map((s) => 2 * delays[used[k]] * s)]);
+  const shift = frames.map((f, k) => [
+    ...f.perVariance,
+    ...f.perVariance.map((s) => 2 * delays[used[k]] * s),
+  ]);
   for (let i = 0; i < n; i++) {
     for (let j = 0; j < n; j++) covariance[i * n + j] = bilinear(shift[i], shift[j], line.covariance);
     covariance[i * n + i] += frames[i].lightVariance;
@@ -30,9 +40,12 @@ export function boundsAtTruth(scenario, mean) {
   const information = new Float64Array(4);
   const weighted = slopes.map(() => [0, 0]);
   for (let i = 0; i < n; i++) {
-    for (let j = 0; j < n; j++) for (let a = 0; a < 2; a++) weighted[i][a] += covariance[i * n + j] * slopes[j][a];
+    for (let j = 0; j < n; j++)
+      for (let a = 0; a < 2; a++) weighted[i][a] += covariance[i * n + j] * slopes[j][a];
   }
-  for (let i = 0; i < n; i++) for (let a = 0; a < 2; a++) for (let b = 0; b < 2; b++) information[a * 2 + b] += slopes[i][a] * weighted[i][b];
+  for (let i = 0; i < n; i++)
+    for (let a = 0; a < 2; a++)
+      for (let b = 0; b < 2; b++) information[a * 2 + b] += slopes[i][a] * weighted[i][b];
   invertSymmetric(information, 2);
   const tauVariance = information[3];
 
@@ -76,11 +89,13 @@ function frameInformation(scenario, mean, i, width, height, pixel) {
   const full = evaluation.information.slice();
   invertSymmetric(full, 7);
   const widthCovariance = new Float64Array(9);
-  for (let a = 0; a < 3; a++) for (let b = 0; b < 3; b++) widthCovariance[a * 3 + b] = full[(3 + a) * 7 + 3 + b] * area ** 2;
+  for (let a = 0; a < 3; a++)
+    for (let b = 0; b < 3; b++) widthCovariance[a * 3 + b] = full[(3 + a) * 7 + 3 + b] * area ** 2;
   // light with the width held
   const free = [0, 1, 2, 6];
   const inner = new Float64Array(16);
-  for (let a = 0; a < 4; a++) for (let b = 0; b < 4; b++) inner[a * 4 + b] = evaluation.information[free[a] * 7 + free[b]];
+  for (let a = 0; a < 4; a++)
+    for (let b = 0; b < 4; b++) inner[a * 4 + b] = evaluation.information[free[a] * 7 + free[b]];
   invertSymmetric(inner, 4);
   const perVariance = [3, 4, 5].map((w) => {
     let sum = 0;

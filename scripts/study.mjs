@@ -5,16 +5,17 @@
 //
 // The seed of stack k at every level is SEED + k, fixed beforehand; --first 1000 goes on with further stacks where
 // counting error leaves doubt.
-import { availableParallelism } from "node:os";
+
 import { readFileSync } from "node:fs";
+import { availableParallelism } from "node:os";
 import { parseArgs } from "node:util";
 import { isMainThread, parentPort, Worker, workerData } from "node:worker_threads";
-import { boundsAtTruth } from "./study-bound.mjs";
-import { drawFrames, expectation } from "../dist/field/synthesise.js";
 import { readScenario } from "../dist/field/scenario.js";
+import { drawFrames, expectation } from "../dist/field/synthesise.js";
 import { createRandom } from "../dist/numerics/random.js";
 import { analyse } from "../dist/outcome/analyse.js";
 import { memoryStack } from "../dist/stack/memory-stack.js";
+import { boundsAtTruth } from "./study-bound.mjs";
 
 const SEED = 20_000;
 
@@ -51,7 +52,14 @@ function analyseOne(scenario, mean, k) {
   const stack = memoryStack({ frames, height, width, acquisition: scenario.acquisition });
   const { result } = analyse(stack);
   const { diffusion_coefficient: d, lifetime: tau, diffusion_length: length } = result.quantities;
-  return { d, tau, length, law: result.transport.preferred, decay: result.decay.preferred, level: result.verdict.level };
+  return {
+    d,
+    tau,
+    length,
+    law: result.transport.preferred,
+    decay: result.decay.preferred,
+    level: result.verdict.level,
+  };
 }
 
 function work() {
@@ -120,7 +128,9 @@ async function main() {
     },
   });
   const text = values.scenario === undefined ? SCENARIO : readFileSync(values.scenario, "utf8");
-  console.log("light in the first frame | quantity | mean pull | spread of pulls | coverage of 95 % | variance over bound");
+  console.log(
+    "light in the first frame | quantity | mean pull | spread of pulls | coverage of 95 % | variance over bound",
+  );
   for (const light of values.light.split(",").map(Number)) {
     const scenario = scenarioAt(text, light);
     const mean = expectation(scenario);
@@ -134,7 +144,11 @@ async function main() {
       ["L", "length", truth.diffusion_length_um],
     ];
     for (const [name, key, value] of rows) {
-      const s = summarise(done.map((answer) => answer[key]), value, bounds[key]);
+      const s = summarise(
+        done.map((answer) => answer[key]),
+        value,
+        bounds[key],
+      );
       console.log(
         `${light} | ${name} | ${s.mean.toFixed(3)} ± ${s.meanError.toFixed(3)} | ${s.spread.toFixed(3)} | ${(100 * s.coverage).toFixed(1)} ± ${(100 * s.coverageError).toFixed(1)} % | ${s.overBound.toFixed(3)} ± ${s.overBoundError.toFixed(3)}${s.limits > 0 ? ` | ${s.limits} upper limits` : ""}`,
       );
