@@ -42,7 +42,7 @@ export function lightFigure(drawing: Drawing, analysis: Analysis): string {
 }
 
 function hasLight(row: FrameRow): row is WithLight {
-  return row.photons !== null && row.u_photons !== null && row.photons > 0;
+  return row.photons !== null && row.u_photons !== null;
 }
 
 function lightPanel(
@@ -53,11 +53,11 @@ function lightPanel(
 ): Element {
   const { plot } = drawing;
   const last = analysis.result.decay === null;
-  const used = rows.filter((row) => row.used_in_decay);
-  const domain = decades([
-    ...rows.map((row) => row.photons),
-    ...analysis.lightCurve.map((point) => point.value),
-  ]);
+  const domain = verticalRange(analysis, rows);
+  const inside = rows.filter((row) => row.photons >= domain[0]);
+  const used = inside.filter((row) => row.used_in_decay);
+  const aside = inside.filter((row) => !row.used_in_decay);
+  const below = rows.filter((row) => row.photons < domain[0]);
   const clamp = (value: number) => Math.min(domain[1], Math.max(domain[0], value));
   return plot.plot({
     ...common(drawing, HEIGHT),
@@ -81,7 +81,7 @@ function lightPanel(
     },
     marks: [
       plot.frame({ stroke: INK, strokeOpacity: 0.35 }),
-      plot.link(rows, {
+      plot.link(inside, {
         x1: "delay_ns",
         x2: "delay_ns",
         y1: (row: WithLight) => clamp(row.photons - row.u_photons),
@@ -91,9 +91,9 @@ function lightPanel(
       }),
       plot.dot(used, { x: "delay_ns", y: "photons", r: 2.6, fill: DATA }),
       plot.lineY(analysis.lightCurve, { x: "delay", y: "value", stroke: LAW, strokeWidth: 2 }),
-      ...flagCounts(rows.filter((row) => !row.used_in_decay)).map(([flag]) =>
+      ...flagCounts(aside).map(([flag]) =>
         plot.dot(
-          rows.filter((row) => !row.used_in_decay && mainFlag(row) === flag),
+          aside.filter((row) => mainFlag(row) === flag),
           {
             x: "delay_ns",
             y: "photons",
@@ -104,6 +104,13 @@ function lightPanel(
           },
         ),
       ),
+      plot.text(below, {
+        x: "delay_ns",
+        y: domain[0],
+        text: () => "▾",
+        fill: asideColour(null),
+        fontSize: 11,
+      }),
     ],
   });
 }
@@ -135,11 +142,15 @@ function residualPanel(drawing: Drawing, analysis: Analysis, x: [number, number]
   });
 }
 
-/** Half a decade of room below the faintest point at most, so that one dead frame cannot flatten the curve. */
-function decades(values: readonly number[]): [number, number] {
-  const high = values.reduce((a, b) => Math.max(a, b), 1);
-  const low = values.reduce((a, b) => (b > 0 ? Math.min(a, b) : a), high);
-  return [Math.max(low / 1.5, high * 1e-6), high * 1.5];
+/** Around the frames used and their curve; frames set aside may add half a decade below, not flatten the rest. */
+function verticalRange(analysis: Analysis, rows: readonly WithLight[]): [number, number] {
+  const used = rows.filter((row) => row.used_in_decay).map((row) => row.photons);
+  const all = rows.map((row) => row.photons);
+  const shown = [...(used.length > 0 ? used : all), ...analysis.lightCurve.map((point) => point.value)];
+  const high = [...all, ...shown].reduce((a, b) => Math.max(a, b), 1);
+  const low = shown.reduce((a, b) => (b > 0 ? Math.min(a, b) : a), high);
+  const lowest = all.reduce((a, b) => Math.min(a, b), low);
+  return [Math.max(lowest / 1.3, low / 3, high * 1e-6), high * 1.4];
 }
 
 /** Labels whole decades, 10³; where the range holds fewer than two of them, also 2×10³ and 5×10³. */
@@ -151,15 +162,24 @@ export function decadeText(value: number, domain: readonly [number, number]): st
   return decadesInside < 2 && (digit === 2 || digit === 5) ? `${digit}${powerOfTen(exponent)}` : "";
 }
 
-function keyEntries(analysis: Analysis, rows: readonly FrameRow[]): KeyEntry[] {
+function keyEntries(analysis: Analysis, rows: readonly WithLight[]): KeyEntry[] {
   const { decay } = analysis.result;
+  const lowest = verticalRange(analysis, rows)[0];
+  const aside = rows.filter((row) => !row.used_in_decay && row.photons >= lowest);
+  const below = rows.filter((row) => row.photons < lowest).length;
   const entries: KeyEntry[] = [{ text: "used", symbol: "circle", colour: DATA, filled: true }];
   if (decay !== null)
     entries.push({ text: DECAY_LAW[decay.preferred], symbol: "line", colour: LAW, filled: true });
-  return [
-    ...entries,
-    ...flagCounts(rows.filter((row) => !row.used_in_decay)).map(([flag]) => asideEntry(flag)),
-  ];
+  entries.push(...flagCounts(aside).map(([flag]) => asideEntry(flag)));
+  if (below > 0) {
+    entries.push({
+      text: `${below} below the axis`,
+      symbol: "caret",
+      colour: asideColour(null),
+      filled: true,
+    });
+  }
+  return entries;
 }
 
 function describe(analysis: Analysis, count: number): string {

@@ -33,7 +33,7 @@ export const ASIDE_SYMBOL: Readonly<Record<FrameFlag, SymbolName>> = {
 
 export interface KeyEntry {
   readonly text: string;
-  readonly symbol: SymbolName | "line";
+  readonly symbol: SymbolName | "line" | "caret";
   readonly colour: string;
   readonly filled: boolean;
   readonly dashed?: boolean;
@@ -93,13 +93,14 @@ export function keyRow(entries: readonly KeyEntry[]): Panel {
 type Placed = KeyEntry & { readonly x: number; readonly row: number };
 
 /** Outlines about the origin, of the shapes that the plots use for the same names. */
-const OUTLINE: Readonly<Record<SymbolName, string>> = {
+const OUTLINE: Readonly<Record<SymbolName | "caret", string>> = {
   circle: "M4 0A4 4 0 1 1-4 0A4 4 0 1 1 4 0Z",
   square: "M-3.5-3.5h7v7h-7Z",
   triangle: "M0-5.1L4.4 2.6H-4.4Z",
   diamond: "M0-5.2L3 0L0 5.2L-3 0Z",
   times: "M-3.4-3.4L3.4 3.4M-3.4 3.4L3.4-3.4",
   plus: "M-4.5 0H4.5M0-4.5V4.5",
+  caret: "M-4-2h8L0 3Z",
   asterisk: "M0-4.6V4.6M-4-2.3L4 2.3M-4 2.3L4-2.3",
 };
 

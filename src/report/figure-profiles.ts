@@ -43,7 +43,7 @@ export function profileFigure(drawing: Drawing, analysis: Analysis): string {
     },
     y: {
       label: "Light / peak of the fit",
-      domain: padded([0, 1.1, ...trimmed(data.map((point) => point.light))], 0.04),
+      domain: padded([0, 1.1, ...bounded(data.map((point) => point.light))], 0.04),
       labelAnchor: "center",
       labelArrow: "none",
       ticks: 5,
@@ -63,7 +63,12 @@ export function profileFigure(drawing: Drawing, analysis: Analysis): string {
     ],
   });
   const key = keyRow([
-    { text: "recorded, ±σ strip", symbol: "circle", colour: DATA, filled: true },
+    {
+      text: analysis.stack.kind === "map" ? "recorded, ±σ strip" : "recorded",
+      symbol: "circle",
+      colour: DATA,
+      filled: true,
+    },
     { text: "fit", symbol: "line", colour: LAW, filled: true },
     { text: "fit of the first", symbol: "line", colour: INK, filled: true, dashed: true },
   ]);
@@ -140,9 +145,7 @@ function sum(values: readonly number[], term: (value: number) => number): number
   return values.reduce((total, value) => total + term(value), 0);
 }
 
-/** Without the outermost hundredth on either side: a faint frame's noise may not set the scale. */
-function trimmed(values: readonly number[]): number[] {
-  const sorted = values.map((value) => Math.min(2, Math.max(-1, value))).sort((a, b) => a - b);
-  const cutOff = Math.floor(sorted.length / 100);
-  return sorted.slice(cutOff, sorted.length - cutOff);
+/** A faint frame's noise may stretch the scale to twice the peak, not further. */
+function bounded(values: readonly number[]): number[] {
+  return values.map((value) => Math.min(2, Math.max(-0.5, value)));
 }

@@ -144,7 +144,7 @@ function keyEntries(analysis: Analysis, inside: readonly FrameRow[], beyond: num
   ];
   const rest: KeyEntry = {
     text: `${beyond} beyond the axis`,
-    symbol: "triangle",
+    symbol: "caret",
     colour: asideColour(null),
     filled: true,
   };

@@ -17,6 +17,8 @@ import { viewerHtml } from "./page-viewer.ts";
 import { decayText, spreadText } from "./terminal.ts";
 import type { Pack } from "./viewer-data.ts";
 import {
+  asSentence,
+  baseName,
   counted,
   intervalText,
   QUANTITY,
@@ -70,7 +72,7 @@ export function renderReport(analysis: Analysis, figures: Figures, pack: Pack): 
 <meta http-equiv="Content-Security-Policy" content="${POLICY}">
 <meta name="viewport" content="width=device-width, initial-scale=1">
 <meta name="generator" content="gleamwalk ${e(result.provenance.version)}">
-<title>${VERDICT[result.verdict.level].word}: ${e(result.input.file)}</title>
+<title>${VERDICT[result.verdict.level].word}: ${e(baseName(result.input.file))}</title>
 <link rel="icon" href="data:,">
 <style>
 ${PAGE_STYLE}
@@ -86,7 +88,7 @@ ${body.join("\n")}
 
 function ruled(title: string, content: readonly string[]): string {
   if (content.length === 0) return "";
-  return `<section class="ruled">\n<h2>${e(title)}</h2>\n${content.join("\n")}\n</section>`;
+  return `<section class="ruled">\n<h2 id="${e(title.toLowerCase().replaceAll(" ", "-"))}">${e(title)}</h2>\n${content.join("\n")}\n</section>`;
 }
 
 function top(result: Result): string {
@@ -96,10 +98,12 @@ function top(result: Result): string {
     (part) => part !== undefined,
   );
   return `<header class="top">
-<h1>${e(result.input.file)}</h1>
+<h1>${e(baseName(result.input.file))}</h1>
 <p>${e([...subject, `${result.input.shape.join(" × ")} (${result.input.axes})`, `analysed ${result.provenance.started.slice(0, 10)}`].join(" · "))}</p>
 </header>`;
 }
+
+const NOTHING_TO_DO = `<p>Next: compare with other samples, or take the <a href="#methods">methods text</a> for a supplement.</p>`;
 
 function verdictSection(result: Result): string {
   const { level, reasons } = result.verdict;
@@ -107,9 +111,9 @@ function verdictSection(result: Result): string {
   const names = Object.keys(QUANTITY) as QuantityName[];
   const items = reasons.map(
     (reason) => `<li class="${reason.level}">
-<p><span class="code">${e(capital(reason.code.replaceAll("-", " ")))}</span><span class="tag">${reason.level}</span></p>
-<p>${e(reason.text)}</p>
-${reason.advice === "" ? "" : `<p class="advice">${e(reason.advice)}</p>`}
+<p><span class="code">${e(asSentence(reason.code.replaceAll("-", " ")).slice(0, -1))}</span><span class="tag">${reason.level}</span></p>
+<p>${e(asSentence(reason.text))}</p>
+${reason.advice === "" ? "" : `<p class="advice">${e(asSentence(reason.advice))}</p>`}
 </li>`,
   );
   return `<section class="verdict ${level}" aria-labelledby="verdict">
@@ -117,7 +121,7 @@ ${reason.advice === "" ? "" : `<p class="advice">${e(reason.advice)}</p>`}
 <dl class="numbers">
 ${names.map((name) => numberHtml(result, name)).join("\n")}
 </dl>
-${items.length === 0 ? "" : `<h3>What was seen, and what to do</h3>\n<ul class="reasons">\n${items.join("\n")}\n</ul>`}
+${items.length === 0 ? NOTHING_TO_DO : `<h3>What was seen, and what to do</h3>\n<ul class="reasons">\n${items.join("\n")}\n</ul>`}
 </section>`;
 }
 
@@ -164,8 +168,4 @@ function footer(result: Result): string {
 <p>gleamwalk ${e(provenance.version)}, ${e(provenance.started)}, ${provenance.seconds.toFixed(2)} s. SHA-256 of ${e(input.file)}: ${e(input.sha256)}</p>
 <p>Beside this file: result.json (every number), frames.csv (one line a frame), figures/ (SVG).</p>
 </footer>`;
-}
-
-function capital(text: string): string {
-  return text.charAt(0).toUpperCase() + text.slice(1);
 }

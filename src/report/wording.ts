@@ -89,6 +89,17 @@ export function intervalText(quantity: Quantity): string {
   return between(quantity.interval95[0], quantity.interval95[1], quantity.u);
 }
 
+/** A finding as a sentence: a capital first, a full stop last. */
+export function asSentence(text: string): string {
+  const begun = text.charAt(0).toUpperCase() + text.slice(1);
+  return /[.!?]$/.test(begun) || begun === "" ? begun : `${begun}.`;
+}
+
+/** A file's name without the folders it lies in. */
+export function baseName(file: string): string {
+  return file.split(/[\\/]/).at(-1) || file;
+}
+
 /** "1 frame", "12 frames". */
 export function counted(count: number, noun: string): string {
   return `${count} ${noun}${count === 1 ? "" : "s"}`;

@@ -73,6 +73,15 @@ describe("light figure", () => {
     expect(elements(figures.good.light, "circle").filter((circle) => circle.r === "2.4")).toHaveLength(count);
   });
 
+  it("is not flattened by a frame with hardly any light, which is counted at the edge instead", async () => {
+    const frames = good.result.frames.map((row) =>
+      row.index === 0 ? { ...row, photons: 0.3, u_photons: 1 } : row,
+    );
+    const { light } = await renderFigures({ ...good, result: { ...good.result, frames } });
+    expect(light).toContain(">1 below the axis</text>");
+    expect(light).not.toContain(">10⁰<");
+  });
+
   it("labels whole decades, and 2 and 5 where there are fewer than two of them", () => {
     expect(decadeText(1000, [50, 5000])).toBe("10³");
     expect(decadeText(2000, [50, 5000])).toBe("");

@@ -34,12 +34,29 @@ describe("renderReport", () => {
   });
 
   it("shows what is text to the user as text, whatever it holds", async () => {
-    const analysis = makeAnalysis("good", { file: `</script><img src=x onerror="alert(1)">&'.tif` });
+    const analysis = makeAnalysis("good", { file: `<img src=x onerror="alert(1)">&'.tif` });
+    analysis.result.acquisition["sample.name"] = { text: "</script><img src=x>", from: "acquisition file" };
     const hostile = await report(analysis);
     expect(hostile).not.toContain("<img");
     expect(hostile.split("</script>")).toHaveLength(html.split("</script>").length);
     expect(parseHTML(hostile).document.querySelector("h1")?.textContent).toBe(analysis.result.input.file);
     expect(document.body.textContent).toContain("Alder <bath 2>");
+  });
+
+  it("makes sentences of findings, and heads the page with the file's name alone", async () => {
+    const analysis = makeAnalysis("good", { file: "D:\\lab\\june/alder.tif" });
+    analysis.result.verdict.reasons[0] = {
+      code: "spot-drifts",
+      level: "note",
+      text: "the spot drifts",
+      advice: "none",
+    };
+    const page = parseHTML(await report(analysis)).document;
+    expect(page.querySelector("h1")?.textContent).toBe("alder.tif");
+    expect(page.querySelector(".reasons")?.textContent).toMatch(
+      /Spot drifts\s*note\s*The spot drifts\.\s*None\./,
+    );
+    expect(page.querySelector("footer")?.textContent).toContain("D:\\lab\\june/alder.tif");
   });
 
   it("lists every setting with where it came from", () => {
