@@ -2,7 +2,7 @@ import { cutPatch } from "./cut.ts";
 import type { PatchFit } from "./fit-spot.ts";
 import { fitPatch } from "./fit-spot.ts";
 import type { Parameters } from "./kernel.ts";
-import { excludeFrom, findOutliers } from "./outliers.ts";
+import { excludeFrom, findOutliers, medianAround } from "./outliers.ts";
 import type { NoiseLaw } from "./patch.ts";
 
 /**
@@ -21,7 +21,11 @@ export function firstLook(
   noise: NoiseLaw,
 ): PatchFit | null {
   const background = median(picture);
-  const smooth = boxMean(picture, width, height, kind);
+  // a hot pixel may outshine the spot many times: the maximum is looked for without it
+  const calm = picture.slice();
+  for (const i of findOutliers(picture, width, height, noise, () => background))
+    calm[i] = medianAround(picture, width, height, i);
+  const smooth = boxMean(calm, width, height, kind);
   const top = indexOfMaximum(smooth);
   const peak = smooth[top]! - background;
   if (!(peak > 0)) return null;

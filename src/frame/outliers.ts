@@ -49,7 +49,13 @@ export function findOutliers(
 
 const neighbours: number[] = [];
 
-function medianAround(photons: ArrayLike<number>, width: number, height: number, index: number): number {
+/** Median of a pixel's eight neighbours, fewer at the border. */
+export function medianAround(
+  photons: ArrayLike<number>,
+  width: number,
+  height: number,
+  index: number,
+): number {
   const x = index % width;
   const y = (index - x) / width;
   neighbours.length = 0;
