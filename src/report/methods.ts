@@ -1,7 +1,8 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
-import { concise, plain } from "./notation.ts";
+import { concise, plain, symbols } from "./notation.ts";
 import {
+  baseName,
   counted,
   DECAY_LAW,
   flagCounts,
@@ -19,13 +20,14 @@ export function methodsText(analysis: Analysis): string[] {
   return [
     spotText(analysis),
     spreadMethod(analysis.result),
-    decayMethod(analysis.result),
+    decayMethod(analysis),
     outcomeText(analysis),
   ].filter((text) => text !== "");
 }
 
 function spotText({ stack, result }: Analysis): string {
   const { detector, space } = stack.acquisition;
+  const dark = stack.dark === null ? "" : " after subtraction of a dark frame";
   const shape =
     stack.kind === "map"
       ? "a two-dimensional Gaussian with free centre, covariance matrix Σ, volume and background (seven parameters)"
@@ -35,16 +37,18 @@ function spotText({ stack, result }: Analysis): string {
       ? `the camera's noise (variance ${plain(detector.excessNoise)}·gain·signal + (${plain(detector.readNoise)} counts)², gain ${plain(detector.gain)} counts per photon, taken from the model)`
       : "counting (Poisson) noise";
   return (
-    `Each of the ${counted(stack.frames, "frame")} of ${result.input.file} (${result.input.shape.join(" × ")}, pixel ${plain(space.pixel.value)} µm at the sample) ` +
-    `was fitted with ${shape} by maximum likelihood for ${noise}; uncertainties are from the inverse Fisher matrix.${asideText(result)}`
+    `Each of the ${counted(stack.frames, "frame")} of ${baseName(result.input.file)} (${result.input.shape.join(" × ")}, pixel ${plain(space.pixel.value)} µm at the sample) ` +
+    `was fitted with ${shape} by maximum likelihood for ${noise}${dark}; uncertainties are from the inverse Fisher matrix.${asideText(result)}`
   );
 }
 
 function asideText(result: Result): string {
-  const counts = flagCounts(result.frames).map(([flag, count]) => `${count} ${flag}`);
-  return counts.length === 0
-    ? ""
-    : ` Frames set aside: ${counts.join(", ")}; the width itself played no part in that choice.`;
+  const flags = flagCounts(result.frames);
+  if (flags.length === 0) return "";
+  const counts = flags.map(([flag, count]) => `${count} ${flag}`).join(", ");
+  // trapping alone is judged by how the spot moves, so there the claim would be false
+  const blind = flags.every(([flag]) => flag !== "trap-dominated");
+  return ` Frames set aside: ${counts}${blind ? "; the width itself played no part in that choice" : ""}.`;
 }
 
 function spreadMethod({ transport, quantities, tensor }: Result): string {
@@ -68,20 +72,32 @@ function spreadMethod({ transport, quantities, tensor }: Result): string {
   const D = quantities.diffusion_coefficient;
   return (
     `The ${tensor === null ? "variance" : "covariance matrix"} over delay t, from ${plain(window.from_ns)} to ${plain(window.to_ns)} ns (${counted(window.frames, "frame")}), ` +
-    `was fitted with a ${TRANSPORT_LAW[preferred]}${law === null ? "" : `, ${law.formula},`} with a free intercept Σ₀, which takes up the excitation spot, ` +
+    `was fitted with a ${TRANSPORT_LAW[preferred]}${law === null ? "" : `, ${symbols(law.formula)},`} with a free intercept Σ₀, which takes up the excitation spot, ` +
     "the point-spread function and the pixel; weights are from the fitted law and the fitted decay, not from single frames." +
     `${choice}${fit}.${birge} This gives D = ${quantityText(D)} ${unitText(D.unit)}.`
   );
 }
 
-function decayMethod({ decay, quantities }: Result): string {
+function decayMethod(analysis: Analysis): string {
+  const { decay, quantities } = analysis.result;
   const { lifetime } = quantities;
   if (decay === null || lifetime === null) return "";
   const law = decay.models[decay.preferred] ?? null;
   return (
     `The light N(t) under the fitted spot (its volume, not the sum over the picture) was fitted with ${DECAY_LAW[decay.preferred]}` +
-    `${law === null ? "" : `, ${law.formula}`}; τ = ${quantityText(lifetime)} ns.`
+    `${law === null ? "" : `, ${symbols(law.formula)}${instrumentText(analysis)}`}; τ = ${quantityText(lifetime)} ns.`
   );
+}
+
+/** What the law of decay was seen through, as far as the acquisition tells. */
+function instrumentText({ stack }: Analysis): string {
+  const { time, response, period, slit } = stack.acquisition;
+  const parts: string[] = [];
+  if (time.gate > 0) parts.push(`averaged over the gate of ${plain(time.gate)} ns`);
+  if (response !== null) parts.push("convolved with the instrument's response");
+  if (period !== null) parts.push(`summed over earlier pulses (period ${plain(period)} ns)`);
+  if (slit !== null) parts.push(`corrected for light beside the slit of ${plain(slit.width.value)} µm`);
+  return parts.length === 0 ? "" : `, ${parts.join(", ")}`;
 }
 
 function outcomeText({ stack, result }: Analysis): string {
@@ -100,7 +116,7 @@ function outcomeText({ stack, result }: Analysis): string {
   }
   if (mobility !== null && temperature !== null) {
     parts.push(
-      `The equivalent mobility is μ = eD/(k_B T) at T = ${concise(temperature.value, temperature.u)} K: μ ${mobility.upper_limit === true ? "" : "= "}${quantityText(mobility)} cm²/(V s).`,
+      `The equivalent mobility is μ = eD/(k_B\u00a0T) at T = ${concise(temperature.value, temperature.u)} K: μ ${mobility.upper_limit === true ? "" : "= "}${quantityText(mobility)} cm²/(V s).`,
     );
   }
   parts.push(

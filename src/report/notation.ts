@@ -92,6 +92,27 @@ export function plain(value: number, digits = 6): string {
   return `${signed(String(mantissa))}${powerOfTen(magnitude)}`;
 }
 
+const SYMBOL: Readonly<Record<string, string>> = {
+  alpha: "α",
+  beta: "β",
+  gamma: "Γ",
+  tau: "τ",
+  tau_1: "τ₁",
+  tau_2: "τ₂",
+  k_n0: "kn₀",
+  intercept: "Σ₀",
+  amplitude: "A",
+  share_1: "f",
+};
+
+/** A formula or a parameter's name as printed: tau_1 becomes τ₁, t^alpha becomes t^α, a hyphen becomes a minus. */
+export function symbols(text: string): string {
+  return text
+    .replace(/[A-Za-z]\w*/g, (word) => (Object.hasOwn(SYMBOL, word) ? (SYMBOL[word] ?? word) : word))
+    .replace(/\^([-\d]+)/g, (_, power: string) => superscript(power))
+    .replaceAll("-", "−");
+}
+
 /** A real minus sign, and no minus before a zero. */
 function signed(text: string): string {
   const isZero = /^-0(\.0*)?$/.test(text);

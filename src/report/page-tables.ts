@@ -1,6 +1,6 @@
 import type { Law, Result } from "../outcome/result.ts";
 import { escapeText as e } from "./figure-parts.ts";
-import { concise, plain } from "./notation.ts";
+import { concise, plain, symbols } from "./notation.ts";
 import { DECAY_LAW, FLAG, probability, QUANTITY, TRANSPORT_LAW, unitText } from "./wording.ts";
 
 interface Column {
@@ -35,7 +35,7 @@ export function lengthsTable(result: Result): string {
   return table(
     [{ text: "Formula" }, { text: "Length (µm)", numeric: true }],
     result.lengths.map((length) => ({
-      cells: [e(length.formula), e(concise(length.value_um, length.u_um))],
+      cells: [e(symbols(length.formula)), e(concise(length.value_um, length.u_um))],
     })),
     { caption: "Lengths, each under its formula" },
   );
@@ -139,9 +139,13 @@ function lawCells(law: Law | null): string[] {
   if (law === null) return ["not fitted", "", "", ""];
   const parameters = Object.entries(law.parameters).map(([name, value]) => {
     const unit = value.unit === "1" || value.unit === "" ? "" : ` ${unitText(value.unit)}`;
-    return e(`${name} = ${concise(value.value, value.u)}${unit}`);
+    return e(`${symbols(name)} = ${concise(value.value, value.u)}${unit}`);
   });
-  const lines = [e(law.formula), ...parameters, ...(law.converged ? [] : ["the fit did not converge"])];
+  const lines = [
+    e(symbols(law.formula)),
+    ...parameters,
+    ...(law.converged ? [] : ["the fit did not converge"]),
+  ];
   const ratio = law.degrees_of_freedom > 0 ? (law.chi2 / law.degrees_of_freedom).toFixed(2) : "–";
   return [
     `<span class="formula">${lines.join("<br>")}</span>`,

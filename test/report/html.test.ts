@@ -112,8 +112,9 @@ describe("methodsText", () => {
     );
     expect(text).toContain("from 0 to 20 ns (41 frames)");
     expect(text).toContain("Σ = Σ₀ + 2Dt");
+    expect(text).toContain("N = N₀ exp(−t/τ), averaged over the gate of 0.25 ns;");
     expect(text).toContain("D = 0.512(34) cm²/s");
-    expect(text).toContain("μ = eD/(k_B T) at T = 295.0(2.0) K");
+    expect(text).toContain("μ = eD/(k_B\u00a0T) at T = 295.0(2.0) K");
     expect(text).toContain("gleamwalk 0.1.0");
   });
 

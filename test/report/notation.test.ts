@@ -1,6 +1,6 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
-import { between, concise, plain, powerOfTen, upperLimit } from "../../src/report/notation.ts";
+import { between, concise, plain, powerOfTen, symbols, upperLimit } from "../../src/report/notation.ts";
 
 describe("concise", () => {
   it("writes the example of JCGM 100, 7.2.2 (from memory): 100.021 47 g with u = 0.35 mg", () => {
@@ -100,6 +100,16 @@ describe("plain", () => {
     expect(plain(0)).toBe("0");
     expect(plain(2e11)).toBe("2×10¹¹");
     expect(plain(0.00012, 2)).toBe("1.2×10⁻⁴");
+  });
+});
+
+describe("symbols", () => {
+  it("sets Greek letters, indices, powers and minus signs, and leaves other words alone", () => {
+    expect(symbols("A (f exp(-t/tau_1) + (1 - f) exp(-t/tau_2))^2")).toBe(
+      "A (f exp(−t/τ₁) + (1 − f) exp(−t/τ₂))²",
+    );
+    expect(symbols("A exp(-(t/tau)^beta)")).toBe("A exp(−(t/τ)^β)");
+    expect(symbols("constructor D_late")).toBe("constructor D_late");
   });
 });
 
