@@ -14,8 +14,10 @@ export interface PatchFit {
 }
 
 const MOST_ITERATIONS = 40;
-/** Stop when the step is shorter than this many standard deviations: δᵀIδ < (10⁻⁵)². */
+/** Stop after a step shorter than this many standard deviations: δᵀIδ < (10⁻⁵)². */
 const SMALLEST_STEP2 = 1e-10;
+/** Share of a step that is taken at least, before it is cut to what is within reach. */
+const SMALLEST_SHARE = 1 / 16;
 /** A spot narrower than this, in pixels², is a single pixel's noise, not a spot. */
 const SMALLEST_VARIANCE = 0.02;
 
@@ -26,7 +28,9 @@ const SMALLEST_VARIANCE = 0.02;
  * inverse information at the optimum.
  *
  * A step is cut so that the centre moves at most one standard deviation of the spot and no principal variance shrinks
- * below a third or grows beyond threefold; when steps stop getting shorter they are halved.
+ * below a third or grows beyond threefold. Where the data's curvature λ differs from the expected one, full steps
+ * overshoot (in faint frames back and forth for ever, λ ≥ 2): what is left of the step before, r = 1 − share·λ, tells λ,
+ * and the next share is 1/λ (Barzilai and Borwein, IMA J. Numer. Anal. 8 (1988) 141), never above 1.
  *
  * @param start parameters in pixels and photons, with Σ positive definite
  */
@@ -37,7 +41,7 @@ export function fitPatch(kind: "map" | "trace", patch: Patch, start: Parameters,
   const evaluation = createEvaluation(n);
   const p = start.slice();
   const step = new Float64Array(n);
-  let damping = 1;
+  let share = 1;
   let previous = Number.POSITIVE_INFINITY;
   let covariance = new Float64Array(n * n);
   const fail = (iterations: number): PatchFit => ({
@@ -53,9 +57,13 @@ export function fitPatch(kind: "map" | "trace", patch: Patch, start: Parameters,
     evaluate(patch, p, noise, evaluation);
     covariance = evaluation.information.slice();
     if (!invertSymmetric(covariance, n)) return fail(iteration);
+    const left = product(step, evaluation.score) / previous;
     const length2 = newtonStep(evaluation, covariance, n, step);
     if (!Number.isFinite(length2)) return fail(iteration);
     const pinned = pinBackground(kind, evaluation, p, step, noise);
+    share = left < 1 ? Math.min(Math.max(share / (1 - left), SMALLEST_SHARE), 1) : 1;
+    share *= longestStep(kind, p, step);
+    for (let i = 0; i < n; i++) p[i]! += share * step[i]!;
     if (length2 < SMALLEST_STEP2 || pinned < SMALLEST_STEP2) {
       return {
         parameters: p,
@@ -65,12 +73,15 @@ export function fitPatch(kind: "map" | "trace", patch: Patch, start: Parameters,
         iterations: iteration,
       };
     }
-    damping = length2 > previous ? Math.max(damping / 2, 1 / 16) : Math.min(damping * 2, 1);
     previous = length2;
-    const cut = damping * longestStep(kind, p, step);
-    for (let i = 0; i < n; i++) p[i]! += cut * step[i]!;
   }
   return fail(MOST_ITERATIONS);
+}
+
+function product(a: Float64Array, b: Float64Array): number {
+  let sum = 0;
+  for (let i = 0; i < a.length; i++) sum += a[i]! * b[i]!;
+  return sum;
 }
 
 /** step = I⁻¹s; returns its squared length in standard deviations, sᵀI⁻¹s. */

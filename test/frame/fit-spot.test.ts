@@ -87,6 +87,26 @@ describe("the spot of one frame", () => {
     }
   });
 
+  it("is found in every one of 300 wide and faint frames, where full steps overshoot back and forth", () => {
+    const p = Float64Array.of(390, 39, 39, 66, 0, 66, 0.3);
+    const mean = pictureOf(p, 79, 79);
+    for (let seed = 400; seed < 700; seed++) {
+      const fit = fitPatch("map", wholePatch(draw(mean, COUNTING, createRandom(seed)), 79, 79), p, COUNTING);
+      expect(fit.converged).toBe(true);
+      expect(fit.iterations).toBeLessThan(22);
+    }
+  });
+
+  it("is found where the top is flat and next to no background holds the tails", () => {
+    const p = Float64Array.of(130_000, 39, 39, 42, 0, 42, 0);
+    const gaussian = pictureOf(p, 79, 79);
+    const flat = gaussian.map((g) => g * (1 - (0.25 * g) / gaussian[39 * 79 + 39]!) + 0.002);
+    const start = Float64Array.of(120_000, 39.2, 38.9, 45, 0, 45, 0.05);
+    const fit = fitPatch("map", wholePatch(draw(flat, COUNTING, createRandom(16)), 79, 79), start, COUNTING);
+    expect(fit.converged).toBe(true);
+    expect(fit.iterations).toBeLessThan(22);
+  });
+
   it("is no spot where the frame holds background alone, and nothing is thrown", () => {
     for (let seed = 0; seed < 20; seed++) {
       const mean = new Float64Array(30 * 24).fill(1);
