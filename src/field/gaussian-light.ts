@@ -122,7 +122,7 @@ function addTurned(
   const det = determinant(covariance);
   const peak = amount / (2 * Math.PI * Math.sqrt(det));
   // the narrowest cut along each axis sets how finely a pixel is divided
-  const inX = nodesOver(-pixelX / 2, pixelX / 2, 2 / Math.sqrt(det / yy));
+  const inX = nodesOver(-pixelX / 2, pixelX / 2, 1.2 / Math.sqrt(det / yy));
   const reach = 9 * Math.sqrt(yy);
   for (let iy = 0; iy < rows; iy++) {
     const lo = Math.max((iy - 0.5) * pixelY - cy, -reach);
@@ -130,7 +130,7 @@ function addTurned(
     for (const inY of nodesOver(
       Number.isNaN(lo) ? -reach : lo,
       Number.isNaN(hi) ? reach : hi,
-      2 / Math.sqrt(det / xx),
+      1.2 / Math.sqrt(det / xx),
     )) {
       for (let ix = 0; ix < columns; ix++) {
         const x = ix * pixelX - cx;

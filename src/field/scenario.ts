@@ -7,6 +7,7 @@ import { mergeSettings, type SettingText } from "../stack/settings.ts";
 import { type Medium, peakDensity, type Start, tensorFromAxes } from "./medium.ts";
 import type { Recording } from "./recording.ts";
 import { checkScenarioKey, isScenarioKey, ScenarioValues } from "./scenario-keys.ts";
+import { checkLimits } from "./scenario-limits.ts";
 
 /** Full width at half maximum of a Gaussian over its standard deviation: 2√(2 ln 2). */
 const FWHM_PER_SIGMA = 2 * Math.sqrt(2 * Math.LN2);
@@ -90,6 +91,7 @@ export function readScenario(text: string, file: string): Scenario {
     acquisition,
     acquisitionSettings,
   };
+  checkLimits(scenario);
   if (acquisition.time.delays.every((delay) => delay < 0)) {
     throw new InputFault(
       `${file}: time.first lets every frame end before the pulse; start later or take more frames`,

@@ -173,7 +173,7 @@ describe("the three ways to the same light", () => {
     map({ gate: 0.5 }),
     map({ gate: 0.5, period: 9, delays: [-1, 0, 4] }),
     map({ psfVariance: 0.04, drift: [0.01, 0.02] }),
-    trace(0.32, { gate: 0.3 }),
+    trace(0.32, { gate: 0.3, psfVariance: 0.03 }),
     trace(Infinity),
   ];
 

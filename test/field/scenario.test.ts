@@ -144,6 +144,17 @@ describe("readScenario", () => {
     expect(message).toContain(words);
   });
 
+  it.each([
+    ["life.annihilation", { life: ['annihilation = "500 /ns"'] }],
+    ["life.capture", { life: ['capture = "1e9 /ns"', 'trap_lifetime = "5 ns"'] }],
+    ["motion.sigma0", { motion: ['sigma0 = "0.3 nm"'] }],
+    ["motion.sigma0", { motion: ['sigma0 = "30 mm"'] }],
+    ["recording.photons", { recording: ["photons = 1e300"] }],
+    ["excitation.period", { excitation: ['period = "1 fs"'] }],
+  ])("refuses a slip in a unit that no solver could follow: %s", (where, changes) => {
+    expect(fault(toml(changes)).where).toBe(where);
+  });
+
   it("names the line of a syntax error", () => {
     expect(fault("[recording]\nframes = = 3").message).toContain("line 2");
   });
