@@ -1,5 +1,7 @@
 import type { Analysis } from "../outcome/analysis.ts";
+import { colourRamps } from "./viewer-colours.ts";
 import { type Pack, type ViewerData, viewerData } from "./viewer-data.ts";
+import { modelCells, residualCells } from "./viewer-model.ts";
 import { frameViewer } from "./viewer-script.ts";
 import { counted } from "./wording.ts";
 
@@ -26,7 +28,7 @@ ${data.kind === "map" ? cut("cut-y", "Cut along y, mean of a ±σ strip, photons
 <script type="application/json" id="viewer-data">${scriptSafe(JSON.stringify(data))}</script>
 <script type="application/octet-stream" id="viewer-cells">${cells}</script>
 <script>
-(${frameViewer.toString()})().catch(() => {
+(${frameViewer})({ colourRamps: ${colourRamps}, modelCells: ${modelCells}, residualCells: ${residualCells} }).catch(() => {
   const note = document.createElement("p");
   note.textContent = "This browser cannot show the frame viewer; the cuts below and the table of frames show the same data.";
   document.getElementById("viewer").replaceWith(note);

@@ -1,11 +1,20 @@
+import type { colourRamps } from "./viewer-colours.ts";
 import type { ViewerData } from "./viewer-data.ts";
+import type { modelCells, residualCells } from "./viewer-model.ts";
+
+/** Functions whose text stands in the page beside the viewer's own. */
+interface Tools {
+  readonly colourRamps: typeof colourRamps;
+  readonly modelCells: typeof modelCells;
+  readonly residualCells: typeof residualCells;
+}
 
 /**
  * The page's frame viewer. Its *text* is put into the report, so it must hold everything it needs: no import but of
- * types, no name from outside this function. It inflates the cells, computes each frame's model from its seven
- * numbers, and draws map, model, residual and two cuts for the frame that the slider stands on.
+ * types, no name from outside this function. It inflates the cells, has each frame's model computed from its
+ * seven numbers, and draws map, model, residual and two cuts for the frame that the slider stands on.
  */
-export async function frameViewer(): Promise<void> {
+export async function frameViewer(tools: Tools): Promise<void> {
   const element = <T extends Element>(id: string): T => document.getElementById(id) as unknown as T;
   const SVG = "http://www.w3.org/2000/svg";
   const data = JSON.parse(element("viewer-data").textContent ?? "") as ViewerData;
@@ -17,13 +26,7 @@ export async function frameViewer(): Promise<void> {
   const levels = await inflate(element("viewer-cells").textContent ?? "");
   const slider = element<HTMLInputElement>("frame");
   const sameScale = element<HTMLInputElement>("same-scale");
-  // lightness rises evenly along the first ramp and falls evenly to both sides of the second, so that they are read
-  // by lightness alone where hues cannot be told apart; both stay inside sRGB, or they would kink where they are cut
-  const lightRamp = ramp((s) => [0.16 + 0.81 * s, 0.03 + 0.1 * Math.sin(Math.PI * s ** 0.8), 280 + 175 * s]);
-  const residualRamp = ramp((s) => {
-    const far = Math.abs(2 * s - 1);
-    return [0.97 - 0.47 * far, 0.003 + 0.115 * far, s < 0.5 ? 250 : 50];
-  });
+  const ramps = tools.colourRamps();
 
   /** Cells of every frame, as 16-bit levels. */
   async function inflate(text: string): Promise<Uint16Array> {
@@ -34,31 +37,6 @@ export async function frameViewer(): Promise<void> {
     return Uint16Array.from({ length: half }, (_, k) => (bytes[k] ?? 0) + 256 * (bytes[half + k] ?? 0));
   }
 
-  /** 256 colours along a path in OKLCh (lightness, chroma, hue in degrees), as RGBA bytes. */
-  function ramp(path: (s: number) => [number, number, number]): Uint8ClampedArray {
-    const colours = new Uint8ClampedArray(1024);
-    for (let i = 0; i < 256; i++) {
-      const [lightness, chroma, hue] = path(i / 255);
-      colours.set([...toRgb(lightness, chroma, (hue * Math.PI) / 180), 255], 4 * i);
-    }
-    return colours;
-  }
-
-  /** OKLab (B. Ottosson, 2020) to sRGB bytes; constants as published with it, from memory. */
-  function toRgb(lightness: number, chroma: number, hue: number): number[] {
-    const a = chroma * Math.cos(hue);
-    const b = chroma * Math.sin(hue);
-    const l = (lightness + 0.3963377774 * a + 0.2158037573 * b) ** 3;
-    const m = (lightness - 0.1055613458 * a - 0.0638541728 * b) ** 3;
-    const s = (lightness - 0.0894841775 * a - 1.291485548 * b) ** 3;
-    const linear = [
-      4.0767416621 * l - 3.3077115913 * m + 0.2309699292 * s,
-      -1.2684380046 * l + 2.6097574011 * m - 0.3413193965 * s,
-      -0.0041960863 * l - 0.7034186147 * m + 1.707614701 * s,
-    ];
-    return linear.map((c) => 255 * (c <= 0.0031308 ? 12.92 * c : 1.055 * c ** (1 / 2.4) - 0.055));
-  }
-
   /** Recorded photons of one frame's cells. */
   function recorded(place: number): Float64Array {
     return Float64Array.from(
@@ -67,37 +45,9 @@ export async function frameViewer(): Promise<void> {
     );
   }
 
-  /** The fitted spot with its background in the same cells, summed over their pixels; null without a spot. */
   function modelled(place: number): Float64Array | null {
     const spot = data.frames[place]?.spot ?? null;
-    if (spot === null) return null;
-    const [n = 0, cx = 0, cy = 0, xx = 1, xy = 0, yy = 1, background = 0] = spot;
-    const determinant = isTrace ? xx : xx * yy - xy * xy;
-    const peak = isTrace
-      ? (n * pixel) / Math.sqrt(2 * Math.PI * xx)
-      : (n * pixel * pixel) / (2 * Math.PI * Math.sqrt(determinant));
-    const cells = new Float64Array(size);
-    for (let y = 0; y < rows * binDown; y++) {
-      const dy = isTrace ? 0 : (top + y) * pixel - cy;
-      for (let x = 0; x < columns * bin; x++) {
-        const dx = (left + x) * pixel - cx;
-        const form = isTrace
-          ? (dx * dx) / xx
-          : (yy * dx * dx - 2 * xy * dx * dy + xx * dy * dy) / determinant;
-        const cell = Math.floor(y / binDown) * columns + Math.floor(x / bin);
-        cells[cell] = (cells[cell] ?? 0) + background + peak * Math.exp(-form / 2);
-      }
-    }
-    return cells;
-  }
-
-  /** (recorded − model) in the standard deviations that the model gives a cell. */
-  function residuals(light: Float64Array, model: Float64Array): Float64Array {
-    const dark = bin * binDown * data.darkVariance;
-    return light.map((value, k) => {
-      const expected = model[k] ?? 0;
-      return (value - expected) / Math.sqrt(Math.max(1e-6, data.excessNoise * Math.max(0, expected) + dark));
-    });
+    return spot === null ? null : tools.modelCells(spot, data);
   }
 
   const wholeTrace = isTrace ? stackUp() : null;
@@ -114,7 +64,7 @@ export async function frameViewer(): Promise<void> {
       light.set(own, place * size);
       if (fit !== null) {
         model.set(fit, place * size);
-        residual.set(residuals(own, fit), place * size);
+        residual.set(tools.residualCells(own, fit, data), place * size);
       }
     }
     return { light, model, residual };
@@ -304,13 +254,13 @@ export async function frameViewer(): Promise<void> {
     const light = recorded(place);
     const model = modelled(place);
     const scale = sameScale.checked || isTrace ? everyScale : scaleOf([place]);
-    paint("map", wholeTrace?.light ?? light, scale, lightRamp);
-    paint("model", wholeTrace?.model ?? model, scale, lightRamp);
+    paint("map", wholeTrace?.light ?? light, scale, ramps.light);
+    paint("model", wholeTrace?.model ?? model, scale, ramps.light);
     paint(
       "residual",
-      wholeTrace?.residual ?? (model === null ? null : residuals(light, model)),
+      wholeTrace?.residual ?? (model === null ? null : tools.residualCells(light, model, data)),
       [-4, 4],
-      residualRamp,
+      ramps.residual,
     );
     overlay(place);
     drawCut("cut-x", "x", place, light, model);
@@ -337,8 +287,8 @@ export async function frameViewer(): Promise<void> {
     );
   }
 
-  paintBar("light-bar", lightRamp);
-  paintBar("residual-bar", residualRamp);
+  paintBar("light-bar", ramps.light);
+  paintBar("residual-bar", ramps.residual);
   slider.addEventListener("input", show);
   sameScale.addEventListener("change", show);
   for (const [id, by] of [

@@ -158,18 +158,6 @@ describe("the viewer's pictures", () => {
     await page.context().close();
   });
 
-  it("rise evenly in lightness along the colour bar (CIE 1976 L*)", async () => {
-    const { page } = await visit(addresses.map);
-    const bar = await bytes(page, "light-bar");
-    const lightness = Array.from({ length: 256 }, (_, i) => cieLightness(bar.slice(4 * i, 4 * i + 3)));
-    const steps = lightness.slice(1).map((value, i) => value - (lightness[i] ?? 0));
-    expect(Math.min(...steps)).toBeGreaterThan(-0.2);
-    expect((lightness[255] ?? 0) - (lightness[0] ?? 0)).toBeGreaterThan(85);
-    const quarters = [0, 64, 128, 191, 255].map((i) => lightness[i] ?? 0);
-    for (let i = 1; i < 5; i++) expect((quarters[i] ?? 0) - (quarters[i - 1] ?? 0)).toBeGreaterThan(18);
-    await page.context().close();
-  });
-
   it("keep one light scale for all frames where asked", async () => {
     const { page } = await visit(addresses.map);
     await page.locator("#same-scale").press("Space");
@@ -193,13 +181,3 @@ describe("the report without scripts", () => {
     await page.context().close();
   });
 });
-
-/** CIE 1976 lightness of an sRGB colour (IEC 61966-2-1 transfer and luminance, from memory). */
-function cieLightness(rgb: readonly number[]): number {
-  const [r = 0, g = 0, b = 0] = rgb.map((byte) => {
-    const c = byte / 255;
-    return c <= 0.04045 ? c / 12.92 : ((c + 0.055) / 1.055) ** 2.4;
-  });
-  const luminance = 0.2126 * r + 0.7152 * g + 0.0722 * b;
-  return luminance > 0.008856 ? 116 * Math.cbrt(luminance) - 16 : 903.3 * luminance;
-}
