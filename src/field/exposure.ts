@@ -1,3 +1,4 @@
+import { normalCdf } from "../numerics/distributions.ts";
 import {
   determinant,
   type Medium,
@@ -16,32 +17,43 @@ export interface Exposure {
   readonly weight: number;
 }
 
+/** When light is collected, all in ns. */
+export interface Timing {
+  /** Gate opening of each frame, the pulse at 0. */
+  readonly delays: readonly number[];
+  /** How long each frame collects; 0 for an instant. A frame is the mean light over its gate. */
+  readonly gate: number;
+  /** Time between pulses; null for a single pulse. */
+  readonly period: number | null;
+  /** Standard deviation of the instrument's Gaussian response, centred on the pulse; 0 for none. */
+  readonly responseSigma: number;
+}
+
+/** Standard deviations after which a Gaussian response has ended: 2e-9 of it lies beyond. */
+const REACH = 6;
+
 /**
  * The times whose light makes up each frame, rising in age. Gates are cut where a pulse falls into them; before the
  * only pulse there is no light, with a period the wake of the pulse before.
  *
- * @param delays gate openings, ns
- * @param gate length of each gate, ns
- * @param period time between pulses, ns, or null
  * @param rate relative change of the light at an age, 1/ns, falling with age (see `changeRate`)
  */
-export function exposures(
-  delays: readonly number[],
-  gate: number,
-  period: number | null,
-  rate: (age: number) => number,
-): Exposure[] {
-  const list = delays.flatMap((delay, frame) =>
-    gate === 0
-      ? instant(delay, frame, period)
-      : pieces(delay, delay + gate, period).flatMap(({ from, to }) =>
-          nodesOver(from, to, rate(from)).map(({ at, weight }) => ({
+export function exposures(timing: Timing, rate: (age: number) => number): Exposure[] {
+  const { delays, gate, period, responseSigma } = timing;
+  const list = delays.flatMap((delay, frame) => {
+    if (gate === 0 && responseSigma === 0) return instant(delay, frame, period);
+    return windowParts(gate, responseSigma).flatMap(([from, to]) =>
+      pieces(delay + from, delay + to, period).flatMap(({ zero, from, to }) =>
+        nodesOver(from, to, Math.max(rate(from), responseSigma && 1.5 / responseSigma)).map(
+          ({ at, weight }) => ({
             frame,
             age: at,
-            weight: weight / gate,
-          })),
+            weight: weight * collected(zero + at - delay, gate, responseSigma),
+          }),
         ),
-  );
+      ),
+    );
+  });
   return list.sort((a, b) => a.age - b.age);
 }
 
@@ -50,14 +62,40 @@ function instant(delay: number, frame: number, period: number | null): Exposure[
   return delay < 0 ? [] : [{ frame, age: delay, weight: 1 }];
 }
 
-function pieces(from: number, to: number, period: number | null): { from: number; to: number }[] {
-  if (period === null) return to <= 0 ? [] : [{ from: Math.max(from, 0), to }];
-  const list: { from: number; to: number }[] = [];
+/** The gate with its blurred edges, relative to its opening; edges and flat middle apart where both exist. */
+function windowParts(gate: number, sigma: number): [from: number, to: number][] {
+  const blur = REACH * sigma;
+  if (sigma === 0 || gate <= 2 * blur) return [[-blur, gate + blur]];
+  return [
+    [-blur, blur],
+    [blur, gate - blur],
+    [gate - blur, gate + blur],
+  ];
+}
+
+/** Weight per time of light at x after the opening: the gate's mean, smeared by the response. */
+function collected(x: number, gate: number, sigma: number): number {
+  if (sigma === 0) return 1 / gate;
+  if (gate === 0) return Math.exp(-0.5 * (x / sigma) ** 2) / (Math.sqrt(2 * Math.PI) * sigma);
+  return (normalCdf((gate - x) / sigma) - normalCdf(-x / sigma)) / gate;
+}
+
+interface Piece {
+  /** Time of the latest pulse. */
+  readonly zero: number;
+  /** Ages since that pulse. */
+  readonly from: number;
+  readonly to: number;
+}
+
+function pieces(from: number, to: number, period: number | null): Piece[] {
+  if (period === null) return to <= 0 ? [] : [{ zero: 0, from: Math.max(from, 0), to }];
+  const list: Piece[] = [];
   for (let pulse = Math.floor(from / period); pulse * period < to; pulse++) {
     const zero = pulse * period;
     const start = Math.max(from, zero) - zero;
     const end = Math.min(to, zero + period) - zero;
-    if (end > start) list.push({ from: start, to: end });
+    if (end > start) list.push({ zero, from: start, to: end });
   }
   return list;
 }

@@ -28,7 +28,7 @@ const FORGOTTEN = 1e-12;
  * @param medium with annihilation = capture = 0
  */
 export function gaussianLight(medium: Medium, start: Start, recording: Recording): MeanFrames {
-  const list = exposures(recording.delays, recording.gate, recording.period, changeRate(medium, start));
+  const list = exposures(recording, changeRate(medium, start));
   const components: Component[][] = recording.delays.map(() => []);
   for (const exposure of list) {
     components[exposure.frame]!.push(...spotsAt(exposure, medium, start, recording.period));

@@ -1,22 +1,17 @@
 import type { Covariance } from "../frame/spot.ts";
+import type { Timing } from "./exposure.ts";
 import type { Medium, Start } from "./medium.ts";
 
 /**
  * How the light is recorded. A trace has one row whose height is the width of the slit (Infinity: no slit), with the
  * slit's middle at y = 0.
  */
-export interface Recording {
+export interface Recording extends Timing {
   readonly columns: number;
   readonly rows: number;
   /** Size of a pixel at the sample, µm. */
   readonly pixelX: number;
   readonly pixelY: number;
-  /** Gate opening of each frame, ns, the pulse at 0. */
-  readonly delays: readonly number[];
-  /** How long each frame collects, ns; 0 for an instant. A frame is the mean light over its gate. */
-  readonly gate: number;
-  /** Time between pulses, ns; null for a single pulse. */
-  readonly period: number | null;
   /** Variance of the point-spread function per axis, µm². It blurs the light, not the density. */
   readonly psfVariance: number;
   /** Where the pulse strikes at delay 0, µm from the centre of pixel (0, 0). */

@@ -65,10 +65,8 @@ export type ScenarioKey = keyof typeof SCENARIO_RULES;
 const REFUSED: Readonly<Record<string, string>> = {
   axes: "follows from recording.height (none: a trace); take it out",
   "detector.dark": "cannot be simulated; give the offset instead",
-  "instrument.response": "cannot be simulated; take it out",
-  "instrument.fwhm": "cannot be simulated; take it out",
+  "instrument.response": "cannot be simulated; give instrument.fwhm instead",
   "sample.emission_order": "cannot be simulated; take it out",
-  "time.uncertainty": "",
 };
 
 export function isScenarioKey(key: string): key is ScenarioKey {

@@ -49,8 +49,9 @@ const LIMITS: readonly { where: string; wrong: string; beyond: (scenario: Scenar
   },
   {
     where: "time.gate",
-    wrong: "spans more than a hundred periods; check its unit",
-    beyond: ({ recording: { gate, period } }) => period !== null && gate > 100 * period,
+    wrong: "or the instrument's response spans more than a hundred periods; check its unit",
+    beyond: ({ recording: { gate, period, responseSigma } }) =>
+      period !== null && gate + 12 * responseSigma > 100 * period,
   },
 ];
 

@@ -160,6 +160,7 @@ function recordingOf(
     delays: acquisition.time.delays,
     gate: acquisition.time.gate,
     period: acquisition.period,
+    responseSigma: acquisition.response?.kind === "gaussian" ? acquisition.response.fwhm / FWHM_PER_SIGMA : 0,
     psfVariance: ((acquisition.space.psfFwhm?.value ?? 0) / FWHM_PER_SIGMA) ** 2,
     centre: [
       values.get("motion.centre_x") ?? ((width - 1) / 2) * pixel,

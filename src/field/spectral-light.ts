@@ -40,12 +40,7 @@ export function spectralLight(
     period === null
       ? 0
       : handedOver(rate, trapRate, period) * pulseTrain(trapRate, period) * pulseTrain(rate, period);
-  for (const { frame, age, weight } of exposures(
-    recording.delays,
-    recording.gate,
-    recording.period,
-    changeRate(medium, start),
-  )) {
+  for (const { frame, age, weight } of exposures(recording, changeRate(medium, start))) {
     const light = free[frame]!;
     const dark = caught[frame]!;
     const trapSurvival = Math.exp(-trapRate * age);
@@ -113,8 +108,8 @@ function planeLight(
 }
 
 /** The age up to which a spot must keep clear of the border, ns. */
-export function lastAge(medium: Medium, { delays, gate, period }: Recording): number {
-  const last = Math.max(0, ...delays) + gate;
+export function lastAge(medium: Medium, { delays, gate, period, responseSigma }: Recording): number {
+  const last = Math.max(0, ...delays) + gate + 6 * responseSigma;
   // a spot older than twelve lifetimes gives less than 1e-5 of the light
   return period === null ? last : Math.max(Math.min(last, period), 12 / removalRate(medium));
 }

@@ -24,7 +24,7 @@ export function steppedLight(
   const { transform } = evolution;
   const free = recording.delays.map(() => transform.spectrum());
   const caught = recording.delays.map(() => transform.spectrum());
-  const list = exposures(recording.delays, recording.gate, recording.period, changeRate(medium, start));
+  const list = exposures(recording, changeRate(medium, start));
   const dense = new DenseLight(evolution, medium);
   let next = 0;
   const collectStep = () => {

@@ -39,6 +39,7 @@ function recording(parts: Partial<Recording>): Recording {
     delays: [0],
     gate: 0,
     period: null,
+    responseSigma: 0,
     psfVariance: 0,
     centre: [0, 0],
     drift: [0, 0],

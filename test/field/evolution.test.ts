@@ -17,7 +17,16 @@ function annihilating(kN0: number, diffusion: Covariance, start: Start, lifetime
 
 function atOrigin(grid: Grid, spectrum: Float64Array): number {
   const size = 1e-4;
-  const line = { columns: 1, rows: 1, pixelX: size, pixelY: size, delays: [0], gate: 0, period: null };
+  const line = {
+    columns: 1,
+    rows: 1,
+    pixelX: size,
+    pixelY: size,
+    delays: [0],
+    gate: 0,
+    period: null,
+    responseSigma: 0,
+  };
   const still = { psfVariance: 0, centre: [0, 0], drift: [0, 0] } as const;
   return lightPerPixel(grid, spectrum, { ...line, ...still }, [0, 0])[0]! / size ** 2;
 }

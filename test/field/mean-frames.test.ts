@@ -17,6 +17,7 @@ function map(parts: Partial<Recording> = {}): Recording {
     delays: [0, 2, 5],
     gate: 0,
     period: null,
+    responseSigma: 0,
     psfVariance: 0,
     centre: [2.9, 2.3],
     drift: [0, 0],
@@ -175,6 +176,7 @@ describe("the three ways to the same light", () => {
     map({ psfVariance: 0.04, drift: [0.01, 0.02] }),
     trace(0.32, { gate: 0.3, psfVariance: 0.03 }),
     trace(Infinity),
+    map({ gate: 0.5, responseSigma: 0.3, delays: [-0.5, 0.2, 4] }),
   ];
 
   it("agree to 2e-7 of each frame's peak for plain diffusion", () => {

@@ -121,8 +121,8 @@ describe("readScenario", () => {
     ["a slit before a map", toml({ slit: ['width = "0.3 um"'] }), "slit.width", "a map has no slit"],
     [
       "a response it cannot simulate",
-      toml({ instrument: ['fwhm = "0.1 ns"'] }),
-      "instrument.fwhm",
+      toml({ instrument: ['response = "irf.csv"'] }),
+      "instrument.response",
       "cannot be simulated",
     ],
     [
