@@ -40,7 +40,12 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
     verdict,
     quantities: outcome.quantities,
     lengths: outcome.lengths,
-    tensor: tensorOf(reading.line, acquisition, joint.spreadBirge),
+    tensor: tensorOf(
+      reading.line,
+      acquisition,
+      joint.spreadBirge,
+      outcome.quantities.diffusion_coefficient.value,
+    ),
     transport: {
       preferred: reading.preferredLaw,
       window: { from_ns: window[0]!, to_ns: window.at(-1)!, frames: window.length },

@@ -67,7 +67,7 @@ export function quantitiesOf(reading: Reading, joint: Joint, seed: number): Quan
   return {
     moved,
     budget,
-    lengths: lengthsOf(counted, length, moved),
+    lengths: lengthsOf(counted, length, moved, lawSource === "line"),
     quantities: {
       diffusion_coefficient: { ...diffusion, from: lawSource },
       lifetime: lifetime === null ? null : { ...lifetime, from: "decay" },
@@ -313,8 +313,16 @@ function lengthRows(
   ];
 }
 
-/** L by its definition, and what papers quote under the same letter. */
-function lengthsOf(counted: Counted, length: Quantity | null, moved: boolean): Result["lengths"] {
+/**
+ * L by its definition and, beside a straight line, what papers quote under the same letter; without motion none. Where
+ * D depends on delay √(Dτ) of its early value has no meaning.
+ */
+function lengthsOf(
+  counted: Counted,
+  length: Quantity | null,
+  moved: boolean,
+  isLine: boolean,
+): Result["lengths"] {
   if (length === null || counted.lifetime === null || !moved || counted.diffusion.value <= 0) return [];
   const product = (counted.diffusion.value / CM2_PER_S) * counted.lifetime.value;
   const relative = length.u / length.value;
@@ -322,10 +330,6 @@ function lengthsOf(counted: Counted, length: Quantity | null, moved: boolean): R
     const value = Math.sqrt(factor * product);
     return { formula, value_um: value, u_um: value * relative };
   };
-  return [
-    { formula: "L = √(½⟨x²⟩ at recombination)", value_um: length.value, u_um: length.u },
-    of("√(Dτ)", 1),
-    of("√(2Dτ)", 2),
-    of("√(4Dτ)", 4),
-  ];
+  const own = { formula: "L = √(½⟨x²⟩ at recombination)", value_um: length.value, u_um: length.u };
+  return isLine ? [own, of("√(Dτ)", 1), of("√(2Dτ)", 2), of("√(4Dτ)", 4)] : [own];
 }

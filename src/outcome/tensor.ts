@@ -1,17 +1,25 @@
 import { propagateTogether } from "../numerics/propagate.ts";
 import type { Acquisition } from "../stack/acquisition.ts";
 import type { LineFit } from "../transport/line.ts";
-import { CM2_PER_S } from "./quantities.ts";
+import { meanDiffusion } from "../transport/line.ts";
 import type { Result } from "./result.ts";
 
 /**
- * The diffusion tensor of a map's line, cm²/s, with its principal values and the angle of the larger one from the x axis
+ * The diffusion tensor of a map, cm²/s, with its principal values and the angle of the larger one from the x axis
  * (−90° to 90°). Uncertainties by JCGM 100:2008, 5.2, from the line's covariance, pixel size and time base; the angle of
  * a nearly isotropic tensor is undetermined, which its uncertainty (at most 90°) then says.
+ *
+ * @param headline D as reported, cm²/s, half the tensor's trace: where another law than the line stands for D, the
+ *   line gives the anisotropy alone
  */
-export function tensorOf(line: LineFit, acquisition: Acquisition, birge: number): Result["tensor"] {
+export function tensorOf(
+  line: LineFit,
+  acquisition: Acquisition,
+  birge: number,
+  headline: number,
+): Result["tensor"] {
   if (line.diffusion.length !== 3) return null;
-  const scale = CM2_PER_S * acquisition.sample.emissionOrder;
+  const scale = headline / meanDiffusion(line).value;
   const u = [3, 4, 5].map((i) => Math.sqrt(line.covariance[i * 6 + i]!));
   const { space, time } = acquisition;
   const inputs = [
