@@ -78,6 +78,11 @@ describe("a TIFF that is not what it says, or says what is not read", () => {
     expect(await messageOf(bytes)).toMatch(/tag 273 of page 2 lies beyond the end of the file/);
   });
 
+  it.each([5, 9, 11])("a sample format given as field type %i, which is no unsigned number", async (type) => {
+    const message = await messageOf(withTag(plainRecording(), 1, 339, 1, type, 1));
+    expect(message).toMatch(/tag 339 of page 2 (holds no whole number|lies beyond the end)/);
+  });
+
   it("two pages with the same pixels", async () => {
     const bytes = plainRecording();
     const offset = new DataView(bytes.buffer).getUint32(locate(bytes, 0, 273).entry + 8, true);

@@ -62,6 +62,8 @@ const TYPE_BYTES: Readonly<Record<number, number>> = {
 const MOST_TAGS = 4096;
 const MOST_PAGES = 200_000;
 const TEXT_TYPE = 2;
+/** Only unsigned fields carry a meaning for the tags read here. */
+const UNSIGNED_TYPES: ReadonlySet<number> = new Set([1, 3, 4, 13, 16, 18]);
 
 interface Format {
   readonly littleEndian: boolean;
@@ -135,7 +137,8 @@ function readDirectory(source: ByteSource, format: Format, offset: number, page:
     const type = block.getUint16(at + 2, littleEndian);
     const bytes = valueBytes(source, format, block, at, `tag ${tag} of page ${page}`);
     if (type === TEXT_TYPE) texts.set(tag, decodeText(bytes));
-    else numbers.set(tag, decodeNumbers(bytes, type, littleEndian));
+    else if (UNSIGNED_TYPES.has(type)) numbers.set(tag, decodeNumbers(bytes, type, littleEndian));
+    else throw damaged(source, `tag ${tag} of page ${page} holds no whole number`);
   }
   const next = toNumber(block, count * entryBytes, pointerBytes, littleEndian);
   return { directory: { numbers, texts }, next };
@@ -167,14 +170,11 @@ function toNumber(block: DataView, at: number, bytes: number, littleEndian: bool
   return Number(block.getBigUint64(at, littleEndian));
 }
 
-/** Only unsigned fields carry a meaning for the tags read here; a signed or rational one reads as NaN. */
 function decodeNumbers(bytes: DataView, type: number, littleEndian: boolean): number[] {
   const size = TYPE_BYTES[type] ?? 1;
-  const unsigned = [1, 3, 4, 13, 16, 18].includes(type);
   const values = new Array<number>(bytes.byteLength / size);
   for (let i = 0; i < values.length; i++) {
-    if (!unsigned) values[i] = Number.NaN;
-    else values[i] = size === 1 ? bytes.getUint8(i) : toNumber(bytes, i * size, size, littleEndian);
+    values[i] = size === 1 ? bytes.getUint8(i) : toNumber(bytes, i * size, size, littleEndian);
   }
   return values;
 }
