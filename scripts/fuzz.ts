@@ -23,7 +23,13 @@ interface Run {
   readonly seconds: number;
 }
 
-function gleamwalk(...args: string[]): Promise<Run> {
+/** A run over the limit is repeated once: on a busy machine the first may have waited for a turn. */
+async function gleamwalk(...args: string[]): Promise<Run> {
+  const run = await once(args);
+  return run.code === null ? once(args) : run;
+}
+
+function once(args: readonly string[]): Promise<Run> {
   return new Promise((done) => {
     const begin = performance.now();
     const child = spawn(process.execPath, [main, ...args], { stdio: ["ignore", "pipe", "pipe"] });
