@@ -57,6 +57,17 @@ export function exposures(timing: Timing, rate: (age: number) => number): Exposu
   return list.sort((a, b) => a.age - b.age);
 }
 
+/** Exposures of each frame, in the order they come in. */
+export function byFrame(list: readonly Exposure[]): Map<number, Exposure[]> {
+  const groups = new Map<number, Exposure[]>();
+  for (const exposure of list) {
+    const group = groups.get(exposure.frame);
+    if (group === undefined) groups.set(exposure.frame, [exposure]);
+    else group.push(exposure);
+  }
+  return groups;
+}
+
 function instant(delay: number, frame: number, period: number | null): Exposure[] {
   if (period !== null) return [{ frame, age: delay - period * Math.floor(delay / period), weight: 1 }];
   return delay < 0 ? [] : [{ frame, age: delay, weight: 1 }];

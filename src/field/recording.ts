@@ -1,6 +1,5 @@
 import type { Covariance } from "../frame/spot.ts";
 import type { Timing } from "./exposure.ts";
-import type { Medium, Start } from "./medium.ts";
 
 /**
  * How the light is recorded. A trace has one row whose height is the width of the slit (Infinity: no slit), with the
@@ -36,14 +35,6 @@ export interface MeanFrames {
   readonly frames: readonly Float64Array[];
   readonly light: readonly FrameLight[];
 }
-
-/** A way to compute mean frames for the media it fits. */
-export type LightModel = (
-  medium: Medium,
-  start: Start,
-  recording: Recording,
-  accuracy: Accuracy,
-) => MeanFrames;
 
 export interface Accuracy {
   /** Relative error of the densities that the time step is chosen for. */

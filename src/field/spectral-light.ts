@@ -1,17 +1,9 @@
-import { lightBehindSlit, lightPerPixel } from "./aperture.ts";
-import { changeRate, exposures } from "./exposure.ts";
-import { frequency, type Grid, gridFor, moments } from "./grid.ts";
+import { develop, developed } from "./develop.ts";
+import { byFrame, changeRate, exposures } from "./exposure.ts";
+import { frequency, type Grid, gridFor } from "./grid.ts";
 import { handedOver, modeRates } from "./linear-flow.ts";
 import { type Medium, removalRate, type Start } from "./medium.ts";
-import {
-  type Accuracy,
-  centreOf,
-  EMPTY_LIGHT,
-  type FrameLight,
-  hasSlit,
-  type MeanFrames,
-  type Recording,
-} from "./recording.ts";
+import type { Accuracy, MeanFrames, Recording } from "./recording.ts";
 import { Transform } from "./transform.ts";
 
 /**
@@ -30,9 +22,6 @@ export function spectralLight(
   const rates = modeRates(medium, grid);
   const initial = startSpectrum(grid, start);
   const negligible = 1e-15 * initial[0]!;
-  const transform = new Transform(grid);
-  const free = recording.delays.map(() => transform.spectrum());
-  const caught = recording.delays.map(() => transform.spectrum());
   const trapRate = 1 / medium.trapLifetime;
   const { period } = recording;
   // what earlier pulses left in the traps: (S(1/τ_m) − S(Γ))/(Γ − 1/τ_m), written so that nothing cancels
@@ -40,71 +29,28 @@ export function spectralLight(
     period === null
       ? 0
       : handedOver(rate, trapRate, period) * pulseTrain(trapRate, period) * pulseTrain(rate, period);
-  for (const { frame, age, weight } of exposures(recording, changeRate(medium, start))) {
-    const light = free[frame]!;
-    const dark = caught[frame]!;
-    const trapSurvival = Math.exp(-trapRate * age);
+  const transform = new Transform(grid);
+  const groups = byFrame(exposures(recording, changeRate(medium, start)));
+  return developed(recording, (frame) => {
+    const exposed = groups.get(frame);
+    if (exposed === undefined) return null;
+    const free = transform.spectrum();
+    const caught = transform.spectrum();
     for (let i = 0; i < rates.length; i++) {
       if (initial[i]! < negligible) continue;
-      const survival = Math.exp(-rates[i]! * age);
-      const train = pulseTrain(rates[i]!, recording.period);
-      const born = weight * initial[i]!;
-      light[2 * i] = light[2 * i]! + born * survival * train;
-      if (medium.capture > 0) {
-        const fresh = handedOver(rates[i]!, trapRate, age);
-        const caughtNow = fresh * train + trapSurvival * earlier(rates[i]!);
-        dark[2 * i] = dark[2 * i]! + born * medium.capture * caughtNow;
+      const rate = rates[i]!;
+      const train = pulseTrain(rate, period);
+      const left = medium.capture > 0 ? earlier(rate) : 0;
+      for (const { age, weight } of exposed) {
+        const born = weight * initial[i]!;
+        free[2 * i] = free[2 * i]! + born * Math.exp(-rate * age) * train;
+        if (medium.capture === 0) continue;
+        const caughtNow = handedOver(rate, trapRate, age) * train + Math.exp(-trapRate * age) * left;
+        caught[2 * i] = caught[2 * i]! + born * medium.capture * caughtNow;
       }
     }
-  }
-  return collect(grid, transform, free, caught, medium.trapLight, recording);
-}
-
-/** Frames and their truth from the spectra of n and m. The spectra are used up. */
-export function collect(
-  grid: Grid,
-  transform: Transform,
-  free: readonly Float64Array[],
-  caught: readonly Float64Array[],
-  trapLight: number,
-  recording: Recording,
-): MeanFrames {
-  const frames: Float64Array[] = [];
-  const light: FrameLight[] = [];
-  free.forEach((spectrum, frame) => {
-    const dark = caught[frame]!;
-    for (let i = 0; i < dark.length; i++) {
-      dark[i] = dark[i]! * trapLight;
-      spectrum[i] = spectrum[i]! + dark[i]!;
-    }
-    frames.push(lightPerPixel(grid, spectrum, recording, centreOf(recording, frame)));
-    light.push(
-      hasSlit(recording)
-        ? slitLight(grid, spectrum, dark, recording)
-        : planeLight(grid, transform, spectrum, dark),
-    );
+    return develop({ grid, transform, recording, frame, free, caught, trapLight: medium.trapLight });
   });
-  return { frames, light };
-}
-
-function slitLight(grid: Grid, spectrum: Float64Array, dark: Float64Array, recording: Recording): FrameLight {
-  const { amount, varianceX } = lightBehindSlit(grid, spectrum, recording);
-  if (amount === 0) return EMPTY_LIGHT;
-  const caught = dark[0] === 0 ? 0 : lightBehindSlit(grid, dark, recording).amount;
-  return { amount, covariance: [varianceX, 0, 0], caughtShare: caught / amount };
-}
-
-function planeLight(
-  grid: Grid,
-  transform: Transform,
-  spectrum: Float64Array,
-  dark: Float64Array,
-): FrameLight {
-  if (spectrum[0] === 0) return EMPTY_LIGHT;
-  const caughtShare = dark[0]! / spectrum[0]!;
-  const field = new Float64Array(grid.nx * grid.ny);
-  transform.toField(spectrum, field);
-  return { ...moments(grid, field), caughtShare };
 }
 
 /** The age up to which a spot must keep clear of the border, ns. */

@@ -1,10 +1,11 @@
 import { DenseLight } from "./dense-light.ts";
+import { develop, developed } from "./develop.ts";
 import { Evolution } from "./evolution.ts";
-import { changeRate, type Exposure, exposures } from "./exposure.ts";
+import { byFrame, changeRate, type Exposure, exposures } from "./exposure.ts";
 import { gridFor } from "./grid.ts";
 import type { Medium, Start } from "./medium.ts";
 import type { Accuracy, MeanFrames, Recording } from "./recording.ts";
-import { collect, lastAge } from "./spectral-light.ts";
+import { lastAge } from "./spectral-light.ts";
 
 const MOST_PULSES = 500;
 
@@ -22,51 +23,59 @@ export function steppedLight(
   const evolution = new Evolution(medium, start, grid, accuracy.tolerance);
   if (recording.period !== null) settle(evolution, recording.period, accuracy.tolerance * 1e-3);
   const { transform } = evolution;
-  const free = recording.delays.map(() => transform.spectrum());
-  const caught = recording.delays.map(() => transform.spectrum());
   const list = exposures(recording, changeRate(medium, start));
+  const groups = byFrame(list);
+  // traps that earlier pulses filled are known only after a whole period
+  const wake = recording.period !== null && medium.capture > 0;
   const dense = new DenseLight(evolution, medium);
+  const open = new Map<number, Spectra>();
+  const done = new Map<number, ReturnType<typeof develop>>();
+  const finish = (frame: number, { free, caught }: Spectra) => {
+    open.delete(frame);
+    done.set(
+      frame,
+      develop({ grid, transform, recording, frame, free, caught, trapLight: medium.trapLight }),
+    );
+  };
   let next = 0;
   const collectStep = () => {
     dense.stepped();
     const reached: Exposure[] = [];
     while (next < list.length && list[next]!.age <= dense.age) reached.push(list[next++]!);
-    for (const [frame, samples] of byFrame(reached)) dense.add(samples, free[frame]!, caught[frame]!);
+    for (const [frame, samples] of byFrame(reached)) {
+      const spectra = open.get(frame) ?? { free: transform.spectrum(), caught: transform.spectrum() };
+      open.set(frame, spectra);
+      dense.add(samples, spectra.free, spectra.caught);
+      if (!wake && groups.get(frame)!.at(-1) === samples.at(-1)) finish(frame, spectra);
+    }
   };
   const last = list.at(-1)?.age ?? 0;
   // an exposure at the very pulse needs a step behind it too
   evolution.advance(Math.max(last, Number.MIN_VALUE), collectStep);
-  if (recording.period !== null && medium.capture > 0) {
-    evolution.advance(recording.period);
-    addWake(list, evolution.caught, caught, medium.trapLifetime, recording.period);
+  if (wake) evolution.advance(recording.period);
+  for (const [frame, spectra] of open) {
+    addWake(groups.get(frame)!, evolution.caught, spectra.caught, medium.trapLifetime, recording.period!);
+    finish(frame, spectra);
   }
-  return collect(grid, transform, free, caught, medium.trapLight, recording);
+  return developed(recording, (frame) => done.get(frame) ?? null);
+}
+
+interface Spectra {
+  readonly free: Float64Array;
+  readonly caught: Float64Array;
 }
 
 /** Caught excitons of all earlier pulses, each like the last one: a geometric series, emptying with τ_m. */
 function addWake(
-  list: readonly Exposure[],
+  samples: readonly Exposure[],
   left: Float64Array,
-  caught: readonly Float64Array[],
+  caught: Float64Array,
   trapLifetime: number,
   period: number,
 ): void {
   const train = -1 / Math.expm1(-period / trapLifetime);
-  for (const [frame, samples] of byFrame(list)) {
-    const weight = samples.reduce((sum, { age, weight }) => sum + weight * Math.exp(-age / trapLifetime), 0);
-    const spectrum = caught[frame]!;
-    for (let i = 0; i < left.length; i++) spectrum[i] = spectrum[i]! + weight * train * left[i]!;
-  }
-}
-
-function byFrame(list: readonly Exposure[]): Map<number, Exposure[]> {
-  const groups = new Map<number, Exposure[]>();
-  for (const exposure of list) {
-    const group = groups.get(exposure.frame);
-    if (group === undefined) groups.set(exposure.frame, [exposure]);
-    else group.push(exposure);
-  }
-  return groups;
+  const weight = samples.reduce((sum, { age, weight }) => sum + weight * Math.exp(-age / trapLifetime), 0);
+  for (let i = 0; i < left.length; i++) caught[i] = caught[i]! + weight * train * left[i]!;
 }
 
 function settle(evolution: Evolution, period: number, tolerance: number): void {
