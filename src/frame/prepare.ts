@@ -86,6 +86,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
   const patches: Patch[] = [];
   const saturated: boolean[] = [];
   const empty: boolean[] = [];
+  const isSaturated = saturationOf(stack);
   const outerOutliers = new Int32Array(stack.frames);
   for (let index = 0; index < stack.frames; index++) {
     const photons = reader.read(index);
@@ -93,7 +94,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
     outerOutliers[index] = removeOuterOutliers(photons, width, height, patch, noise);
     patches.push(patch);
     empty.push(isFlat(photons));
-    saturated.push(reachesSaturation(stack, patch));
+    saturated.push(isSaturated(patch));
   }
   const typical = first.parameters.slice();
   typical[0]! /= after.length;
@@ -198,18 +199,28 @@ function isFlat(photons: Float64Array): boolean {
   return photons.every((photon) => photon === value);
 }
 
-/** The spot is saturated where a full pixel has a nearly full neighbour; a full pixel alone is a hot one. */
-function reachesSaturation(stack: Stack, patch: Patch): boolean {
+/**
+ * Tells frames whose spot is saturated: a full pixel has a nearly full neighbour; a full pixel alone is a hot one. Full
+ * is counted in stored counts, so a dark frame comes off pixel by pixel.
+ */
+function saturationOf(stack: Stack): (patch: Patch) => boolean {
   const { saturation, offset, gain } = stack.acquisition.detector;
-  if (saturation === null) return false;
-  const full = (saturation - offset) / gain;
-  const { width } = patch.rectangle;
-  const { data } = patch;
-  for (let i = 0; i < data.length; i++) {
-    if (data[i]! < full * (1 - 1e-6)) continue;
-    const right = (i + 1) % width === 0 ? 0 : (data[i + 1] ?? 0);
-    const below = data[i + width] ?? 0;
-    if (right > full / 2 || below > full / 2) return true;
-  }
-  return false;
+  if (saturation === null) return () => false;
+  const { dark } = stack;
+  const darkest = dark === null ? offset : dark.reduce((a, b) => Math.max(a, b), 0);
+  // single precision rounds the photons
+  const fullest = (base: number): number => ((saturation - base) / gain) * (1 - 1e-6);
+  const least = fullest(darkest);
+  return ({ data, rectangle: { x0, y0, width } }) => {
+    for (let i = 0; i < data.length; i++) {
+      if (data[i]! < least) continue;
+      const at = (y0 + Math.floor(i / width)) * stack.width + x0 + (i % width);
+      const full = fullest(dark === null ? offset : dark[at]!);
+      if (data[i]! < full) continue;
+      const right = (i + 1) % width === 0 ? 0 : (data[i + 1] ?? 0);
+      const below = data[i + width] ?? 0;
+      if (right > full / 2 || below > full / 2) return true;
+    }
+    return false;
+  };
 }
