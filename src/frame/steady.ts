@@ -1,9 +1,14 @@
+/** χ² over its degrees of freedom from which a scatter is worth following. */
+const WORTH_FOLLOWING = 4;
+
 /**
  * A smooth course through a quantity that hardly changes from frame to frame (the spot's centre, the background): a
  * constant where that describes the values, else a straight line, else the values themselves.
  *
  * A reference that follows each frame's own fluctuation would bring a bias of one over the frame's photons; a wrong
- * constant one of the squared error. So the simplest course that the data allow at the 1 % level is taken.
+ * constant one of the squared error. So the simplest course that the data allow at the 1 % level is taken, and the
+ * values themselves only where they scatter by four times their variance: below that following them costs more than
+ * it mends, and in faint frames it feeds on itself.
  *
  * @param times abscissa
  * @param values one a frame, NaN where there is none
@@ -54,11 +59,13 @@ export function steadyCourse(
     return sum;
   };
   const result = { slope, slopeU };
+  const good = (sum: number, freedom: number): boolean =>
+    fits(sum, freedom) || sum < WORTH_FOLLOWING * freedom;
   // a slope worth four standard deviations is a drift even where scatter hides it from χ²
   const steady = Math.abs(slope) < 4 * slopeU;
-  if (steady && fits(chi2(course(false)), count - 1))
+  if (steady && good(chi2(course(false)), count - 1))
     return { ...result, kind: "constant", at: course(false) };
-  if (fits(chi2(course(true)), count - 2)) return { ...result, kind: "line", at: course(true) };
+  if (good(chi2(course(true)), count - 2)) return { ...result, kind: "line", at: course(true) };
   const fallback = course(true);
   return { ...result, kind: "own", at: (i) => (Number.isFinite(values[i]!) ? values[i]! : fallback(i)) };
 }

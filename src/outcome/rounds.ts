@@ -76,7 +76,8 @@ export class Rounds {
 
   read(): Reading {
     this.scoreAll();
-    this.smoothLight(this.fitLight());
+    // weights are those of one light for all frames still: no χ² can be judged by them
+    this.smoothLight(this.fitLight(), 0);
     this.fitOwnSpots();
     let line = this.startLine();
     let law: LawFit | null = null;
@@ -189,11 +190,11 @@ export class Rounds {
   }
 
   /** Next round's expected light: the decay where it describes the light, else a running mean. */
-  private smoothLight(decays: Decays | null): void {
+  private smoothLight(decays: Decays | null, leastP = 1e-3): void {
     const { frames: used, value } = this.light;
     const fit = decays?.fits[decays.preferred] ?? null;
-    const expected = runningMean(value);
-    if (fit?.converged && fit.pValue > 1e-3) {
+    const expected = runningMean(value, this.light.sigma);
+    if (fit?.converged && fit.pValue >= leastP) {
       for (const [k, i] of used.entries()) expected[i] = fit.prediction[k]!;
     }
     const least = 1e-3 * Math.max(...expected.filter(Number.isFinite), 1e-3);
@@ -247,12 +248,11 @@ export class Rounds {
 
   private nextModels(line: LineFit, law: LawFit | null): SmoothModels {
     const { models, times } = this;
-    const first = Math.max(0, ...this.stack.acquisition.time.delays.filter((d) => d >= 0).slice(0, 1));
     return {
       ...models,
       light: (i) => this.expectedLight[i]!,
       variance: (i) => {
-        const t = Math.max(times[i]!, Math.min(first, 0));
+        const t = Math.max(times[i]!, 0);
         const straight = line.intercept.map((value, a) => value + 2 * line.diffusion[a]! * t);
         if (law === null || law.law === "line") return straight;
         const shift =
@@ -355,20 +355,28 @@ function firstFlags(
   return flags;
 }
 
-/** Mean over each frame and its two neighbours, the frame itself counted twice. */
-function runningMean(values: Float64Array): Float64Array {
+/** Light over its standard deviation that a mean over frames must reach before it may stand for one of them. */
+const TELLING = 10;
+
+/**
+ * Mean over each frame and its neighbours, the frame itself counted twice; over so many neighbours that the frame's own
+ * fluctuation is small in it, since the weights of what is read next come from it.
+ */
+function runningMean(values: Float64Array, sigma: Float64Array): Float64Array {
   return values.map((value, i) => {
-    let sum = 0;
-    let weights = 0;
-    for (const [offset, weight] of [
-      [-1, 1],
-      [0, 2],
-      [1, 1],
-    ] as const) {
-      const neighbour = values[i + offset];
-      if (neighbour === undefined || !Number.isFinite(neighbour)) continue;
-      sum += weight * neighbour;
-      weights += weight;
+    const own = Number.isFinite(value) ? 2 : 0;
+    let sum = own > 0 ? own * value : 0;
+    let weights = own;
+    let variance = own > 0 ? (own * sigma[i]!) ** 2 : 0;
+    for (let reach = 1; reach < values.length; reach++) {
+      for (const j of [i - reach, i + reach]) {
+        const neighbour = values[j];
+        if (neighbour === undefined || !Number.isFinite(neighbour)) continue;
+        sum += neighbour;
+        weights++;
+        variance += sigma[j]! ** 2;
+      }
+      if (weights > 0 && sum > TELLING * Math.sqrt(variance)) break;
     }
     return weights > 0 ? sum / weights : value;
   });
