@@ -1,6 +1,5 @@
+import { inverse, Matrix } from "ml-matrix";
 import { describe, expect, it } from "vitest";
-import { invertSymmetric } from "../../src/numerics/linear-algebra.ts";
-import { fitLinear } from "../../src/numerics/linear-fit.ts";
 import { createRandom } from "../../src/numerics/random.ts";
 import { fitLine, meanDiffusion } from "../../src/transport/line.ts";
 import type { Width } from "../../src/transport/width.ts";
@@ -30,38 +29,42 @@ function turnedWidths(seed: number): Width[] {
   });
 }
 
-/** The same regression by QR of the whitened design (numerics/linear-fit.ts), which shares no code with the line. */
-function byQr(widths: readonly Width[]) {
-  const components = widths[0]!.variance.length;
-  const design = Array.from({ length: 2 * components }, (_, j) =>
-    widths.flatMap(({ time }) =>
-      Array.from({ length: components }, (_, a) =>
-        a === j % components ? (j < components ? 1 : 2 * time) : 0,
-      ),
-    ),
-  );
-  const precision = widths.map(({ covariance }) => {
-    const inverse = covariance.slice();
-    invertSymmetric(inverse, components);
-    return inverse;
+/** The textbook formula θ = (XᵀV⁻¹X)⁻¹XᵀV⁻¹y with the whole of V as one dense matrix, by ml-matrix. */
+function byDenseMatrices(widths: readonly Width[]) {
+  const [frames, k] = [widths.length, widths[0]!.variance.length];
+  const x = Matrix.zeros(frames * k, 2 * k);
+  const v = Matrix.zeros(frames * k, frames * k);
+  const y = Matrix.columnVector(widths.flatMap((w) => w.variance));
+  widths.forEach(({ time, covariance }, i) => {
+    for (let a = 0; a < k; a++) {
+      x.set(i * k + a, a, 1);
+      x.set(i * k + a, k + a, 2 * time);
+      for (let b = 0; b < k; b++) v.set(i * k + a, i * k + b, covariance[a * k + b]!);
+    }
   });
-  return fitLinear({ design, y: widths.flatMap((w) => w.variance), precision });
+  const weighted = x.transpose().mmul(inverse(v));
+  const covariance = inverse(weighted.mmul(x));
+  const theta = covariance.mmul(weighted.mmul(y));
+  const residual = Matrix.sub(y, x.mmul(theta));
+  const chi2 = residual.transpose().mmul(inverse(v)).mmul(residual).get(0, 0);
+  return { theta: theta.to1DArray(), covariance, chi2, degreesOfFreedom: frames * k - 2 * k };
 }
 
 describe("the line of spread", () => {
   it("is generalised least squares of all three components at once", () => {
     const widths = turnedWidths(1);
     const line = fitLine(widths)!;
-    const qr = byQr(widths);
+    const dense = byDenseMatrices(widths);
     [...line.intercept, ...line.diffusion].forEach((value, j) => {
-      expect(value / qr.parameters[j]!).toBeCloseTo(1, 9);
+      expect(value / dense.theta[j]!).toBeCloseTo(1, 8);
     });
-    line.covariance.forEach((value, k) => {
-      const [i, j] = [Math.floor(k / 6), k % 6];
-      expect(value / (qr.standardErrors[i]! * qr.standardErrors[j]!)).toBeCloseTo(qr.correlation[k]!, 8);
+    line.covariance.forEach((value, at) => {
+      const [i, j] = [Math.floor(at / 6), at % 6];
+      const scale = Math.sqrt(dense.covariance.get(i, i) * dense.covariance.get(j, j));
+      expect((value - dense.covariance.get(i, j)) / scale).toBeCloseTo(0, 8);
     });
-    expect(line.chi2 / qr.chi2).toBeCloseTo(1, 8);
-    expect(line.degreesOfFreedom).toBe(qr.degreesOfFreedom);
+    expect(line.chi2 / dense.chi2).toBeCloseTo(1, 8);
+    expect(line.degreesOfFreedom).toBe(dense.degreesOfFreedom);
   });
 
   it("gives the certified line of NIST's Norris set, with its standard deviations", () => {
