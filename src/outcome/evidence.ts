@@ -10,6 +10,7 @@ import type { LawFit } from "../transport/laws.ts";
 import { fitLine, meanDiffusion } from "../transport/line.ts";
 import { perAxis, perAxisVariance } from "../transport/width.ts";
 import type { Reading } from "./reading.ts";
+import { responseEnd } from "./response-end.ts";
 
 /** An estimate over its standard uncertainty, with both. */
 export interface Sign {
@@ -146,11 +147,15 @@ function halves(reading: Reading): { early: Sign; late: Sign } {
   return { early: slope(widths.slice(0, split)), late: slope(widths.slice(split)) };
 }
 
-function glowOf({ light, flags, widths }: Reading): Sign | null {
+function glowOf({ light, flags, widths, stack }: Reading): Sign | null {
+  const { acquisition } = stack;
+  // light that a slow response smears to before the pulse is no older pulse's
+  const reach = responseEnd(acquisition.response);
   let weights = 0;
   let sum = 0;
   for (const [i, list] of flags.entries()) {
     if (!list.includes("before-pulse") || !Number.isFinite(light.value[i]!)) continue;
+    if (acquisition.time.delays[i]! + acquisition.time.gate > -reach + 1e-9) continue;
     const w = 1 / light.sigma[i]! ** 2;
     weights += w;
     sum += w * light.value[i]!;

@@ -100,6 +100,8 @@ function annihilationOrTraps(seen: Case): Reason[] {
   const found: Reason[] = [];
   const flat = shape < -SURE;
   const peaked = shape > SURE;
+  // the foot is then the old excitons', and earlier-pulses-glow says so
+  if (peaked && leftOver(seen) > HARMFUL_GLOW) return found;
   if (flat && (slowing || decaysFastFirst)) found.push(annihilation(seen));
   else if (peaked && (slowing || decaysFastFirst)) found.push(traps(seen));
   else if (slowing && decaysFastFirst && slowsDown(evidence)) {
@@ -180,17 +182,30 @@ function noMotion({ quantities, reading }: Case): Reason | null {
   );
 }
 
-function glow({ evidence, reading }: Case): Reason | null {
-  const { glow: share } = evidence;
-  if (share === null || z(share) < SURE || share.value < 0.003) return null;
-  const modelled = reading.stack.acquisition.period !== null;
+/** Share of old excitons in the first frame, from the frames before the pulse or else from period and lifetime. */
+function leftOver({ evidence, reading, joint }: Case): number {
+  const { glow: seen } = evidence;
+  if (seen !== null) return z(seen) > SURE ? seen.value : 0;
+  const { period } = reading.stack.acquisition;
+  const mean = joint.decay?.intensityAveraged.value ?? 0;
+  return period === null || mean <= 0 ? 0 : Math.exp(-period / mean);
+}
+
+/** Old excitons under the new ones: a broad foot, which the width of one Gaussian cannot tell from traps. */
+const HARMFUL_GLOW = 0.02;
+
+function glow(seen: Case): Reason | null {
+  const share = leftOver(seen);
+  if (share < 0.003) return null;
+  const modelled = seen.reading.stack.acquisition.period !== null;
+  const harmful = share > HARMFUL_GLOW;
   return reason(
-    modelled ? "note" : "caution",
+    harmful && bends(seen) ? "unsound" : modelled && !harmful ? "note" : "caution",
     "earlier-pulses-glow",
-    `${percent(share.value)} of the first frame's light is there before the pulse: excitons of earlier pulses still glow`,
+    `${percent(share)} of the first frame's light is left from earlier pulses${harmful ? "; old excitons have spread and put a broad foot under the new spot, so the widths mix the two" : ""}`,
     modelled
-      ? "they are summed in the decay; a longer time between pulses would remove them"
-      : "give [excitation] period so that earlier pulses are summed, or lengthen the time between pulses",
+      ? "they are summed in the decay, not in the widths; a longer time between pulses would remove them"
+      : "give [excitation] period so that earlier pulses are summed in the decay, or lengthen the time between pulses",
   );
 }
 
