@@ -98,7 +98,7 @@ function alternate(commands: readonly CommandLine[], runs: number): number[] {
 }
 
 const line = (name: string, ...cells: string[]): void =>
-  console.log(`${name.padEnd(30)}${cells.map((cell) => cell.padStart(14)).join("")}`);
+  console.log(`${name.padEnd(30)}${cells.map((cell) => cell.padStart(20)).join("")}`);
 
 function mainTable(): void {
   const file = makeStack(256, 200);
@@ -117,36 +117,35 @@ function mainTable(): void {
   );
 }
 
-/** Time beside the process's own start: the stack's part, which is what should grow linearly. */
-function growthTable(
-  title: string,
-  cases: readonly (readonly [label: string, size: number, frames: number])[],
-): void {
-  const start = median(
-    Array.from({ length: RUNS }, () => time([process.execPath, "dist/cli/main.js", "--version"])),
-  );
+interface Step {
+  readonly label: string;
+  readonly size: number;
+  readonly frames: number;
+}
+
+/** What every further million pixels costs: the same down the column where the cost grows linearly. */
+function growthTable(title: string, steps: readonly Step[]): void {
   const seconds = alternate(
-    cases.map(([, size, frames]) => ours(makeStack(size, frames))),
+    steps.map(({ size, frames }) => ours(makeStack(size, frames))),
     Math.min(RUNS, 3),
   );
-  console.log(`\n${title} (start-up ${start.toFixed(2)} s)`);
-  line("", "seconds", "µs a pixel");
-  for (const [i, [label, size, frames]] of cases.entries()) {
-    const spent = seconds[i] ?? Number.NaN;
-    line(label, spent.toFixed(2), (((spent - start) * 1e6) / (size * size * frames)).toFixed(4));
+  const megapixels = steps.map(({ size, frames }) => (size * size * frames) / 1e6);
+  console.log(`\n${title}`);
+  line("", "seconds", "million pixels", "s a further million");
+  for (const [i, { label }] of steps.entries()) {
+    const [spent = 0, before = 0] = [seconds[i], seconds[i - 1]];
+    const [pixels = 0, fewer = 0] = [megapixels[i], megapixels[i - 1]];
+    const further = i === 0 ? "" : ((spent - before) / (pixels - fewer)).toFixed(3);
+    line(label, spent.toFixed(2), pixels.toFixed(1), further);
   }
 }
 
 console.log(`${cpus()[0]?.model ?? "unknown processor"}, Node ${process.version}\n`);
 mainTable();
 if (!options.quick) {
-  growthTable(
-    "cost over frames, 256 × 256",
-    [50, 100, 200, 400].map((n) => [`${n} frames`, 256, n] as const),
-  );
-  growthTable(
-    "cost over pixels, 200 frames",
-    [64, 128, 256].map((n) => [`${n} × ${n}`, n, 200] as const),
-  );
+  const frames = [50, 100, 200, 400].map((n) => ({ label: `${n} frames`, size: 256, frames: n }));
+  growthTable("cost over frames, 256 × 256 pixels", frames);
+  const sizes = [64, 128, 256, 512].map((n) => ({ label: `${n} × ${n}`, size: n, frames: 200 }));
+  growthTable("cost over pixels, 200 frames", sizes);
 }
 rmSync(join(FOLDER, "result"), { recursive: true, force: true });
