@@ -23,7 +23,7 @@ export interface FrameSet {
   readonly typical: Parameters;
   /** Frames in which the spot reaches the detector's saturation. */
   readonly saturated: readonly boolean[];
-  /** Frames whose pixels are all the same: nothing was recorded. */
+  /** Frames in which nothing was recorded. */
   readonly empty: readonly boolean[];
   /** How even the background is around the spot. */
   readonly surroundings: Surroundings;
@@ -85,7 +85,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
 
   const patches: Patch[] = [];
   const saturated: boolean[] = [];
-  const empty: boolean[] = [];
+  const flat: boolean[] = [];
   const isSaturated = saturationOf(stack);
   const outerOutliers = new Int32Array(stack.frames);
   for (let index = 0; index < stack.frames; index++) {
@@ -93,7 +93,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
     const patch = cutPatch(photons, width, rectangle);
     outerOutliers[index] = removeOuterOutliers(photons, width, height, patch, noise);
     patches.push(patch);
-    empty.push(isFlat(photons));
+    flat.push(isFlat(photons));
     saturated.push(isSaturated(patch));
   }
   const typical = first.parameters.slice();
@@ -107,7 +107,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
     patches,
     typical,
     saturated,
-    empty,
+    empty: emptyFrames(flat, patches, noise),
     surroundings,
     outerOutliers,
   };
@@ -197,6 +197,22 @@ function removeOuterOutliers(
 function isFlat(photons: Float64Array): boolean {
   const value = photons[0]!;
   return photons.every((photon) => photon === value);
+}
+
+/** Photons around a frame of zeros from which chance does not make one, e⁻¹⁵ = 3·10⁻⁷. */
+const NEVER_ZERO = 15;
+
+/**
+ * Frames in which nothing was recorded: all pixels are the same. A frame of zeros among frames of a few counted photons
+ * is a measurement like theirs; to leave it out would make the light look brighter than it is.
+ */
+function emptyFrames(flat: readonly boolean[], patches: readonly Patch[], noise: NoiseLaw): boolean[] {
+  const totals = patches.map((patch) => patch.data.reduce((sum, value) => sum + value, patch.outerSum));
+  return flat.map((same, i) => {
+    if (!same || totals[i] !== 0 || noise.floor > 0) return same;
+    const around = totals.slice(Math.max(0, i - 3), i + 4);
+    return around.reduce((sum, total) => sum + total, 0) > NEVER_ZERO * (around.length - 1);
+  });
 }
 
 /**
