@@ -3,6 +3,7 @@ import { birgeFactor } from "../numerics/model-choice.ts";
 import type { LawFit } from "../transport/laws.ts";
 import { meanDiffusion } from "../transport/line.ts";
 import type { Reading } from "./reading.ts";
+import { transmissionSlope } from "./transmission.ts";
 
 /** The law of spread and the decay together: parameters, covariance, and what they share; µm², ns, photons. */
 export interface Joint {
@@ -21,7 +22,8 @@ export interface Joint {
 
 /**
  * Joins the two fits. The light of a frame is read with the width held on the law, so an error δθ of the law shifts
- * every N_i by G_i·δθ with G_i = ∂N_i/∂Σ · ∂Σ_i/∂θ; the rest of N_i's error is independent of θ. With
+ * every N_i by G_i·δθ with G_i = ∂N_i/∂Σ · ∂Σ_i/∂θ; the rest of N_i's error is independent of θ. Where the law also
+ * says how much light arrives (slit, emission order 2), ∂N_i/∂Σ has the model's own answer N_i·∂ln T_i/∂Σ taken off. With
  * H = (JᵀWJ)⁻¹JᵀW of the decay fit, cov(φ) = (JᵀWJ)⁻¹ + HG·cov(θ)·(HG)ᵀ and cov(φ, θ) = HG·cov(θ)
  * (law of propagation of uncertainty, JCGM 100:2008, 5.2).
  */
@@ -57,11 +59,13 @@ export function joinFits(reading: Reading): Joint {
 
 /** HG: ∂φ_j/∂θ_k through the light, row-major. */
 function answerToLaw(reading: Reading, law: LawFit | null, decay: DecayFit, n: number): Float64Array {
-  const { light, times } = reading;
+  const { light, times, models, frames, stack } = reading;
   const m = decay.parameters.length;
   const weighted = new Float64Array(m * n);
   for (const [k, frame] of light.frames.entries()) {
-    const shift = lightShift(light.perVariance[frame]!, law, times[frame]!);
+    const slope = transmissionSlope(stack.acquisition, frames.kind, models.variance(frame));
+    const perVariance = light.perVariance[frame]!.map((p, a) => p - decay.prediction[k]! * slope[a]!);
+    const shift = lightShift(perVariance, law, times[frame]!);
     const weight = 1 / light.sigma[frame]! ** 2;
     for (let j = 0; j < m; j++) {
       for (let l = 0; l < n; l++) weighted[j * n + l]! += weight * decay.jacobian[j]![k]! * shift[l]!;

@@ -32,3 +32,26 @@ export function transmission(
     return order === 2 ? (slitShare * first) / spread(i) : slitShare;
   });
 }
+
+/** ∂ ln(transmission)/∂Σ of a frame whose spot has the variance Σ, 1/µm², in Σ's order; zeros where all light arrives. */
+export function transmissionSlope(
+  acquisition: Acquisition,
+  kind: "map" | "trace",
+  variance: readonly number[],
+): number[] {
+  const { slit } = acquisition;
+  const thins = acquisition.sample.emissionOrder === 2;
+  if (kind === "map") {
+    if (!thins) return [0, 0, 0];
+    const [xx, xy, yy] = variance as [number, number, number];
+    const determinant = Math.max(xx * yy - xy * xy, 1e-12);
+    return [-yy / (2 * determinant), xy / determinant, -xx / (2 * determinant)];
+  }
+  const xx = Math.max(variance[0]!, 1e-12);
+  const byThinning = thins ? -1 / xx : 0;
+  if (slit === null) return [byThinning];
+  const z = slit.width.value / (2 * Math.SQRT2 * Math.sqrt(xx));
+  // d erf(z)/dz = 2/√π·e^(−z²), dz/dΣ = −z/(2Σ)
+  const bySlit = (-z * Math.exp(-z * z)) / (Math.sqrt(Math.PI) * xx * erf(z));
+  return [byThinning + bySlit];
+}

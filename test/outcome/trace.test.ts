@@ -37,3 +37,23 @@ describe("a streak trace", () => {
     expect(Math.abs(last.msd_um2! - msd)).toBeLessThan(4.5 * last.u_msd_um2!);
   });
 });
+
+describe("a trace behind a slit over many draws", () => {
+  // the law of spread says how much light leaves sideways, so its error is one of the lifetime
+  const runs = Array.from({ length: 60 }, (_, seed) => {
+    const { stack, truth } = recorded(
+      { ...LINE, recording: { ...LINE.recording, photons: 1500 }, slit: { width: "0.3 um" } },
+      900 + seed,
+    );
+    const { lifetime, diffusion_length: length } = resultOf(stack).quantities;
+    return { tau: pull(lifetime!, truth.lifetime_ns), length: pull(length!, truth.diffusion_length_um) };
+  });
+
+  it.each(["tau", "length"] as const)("scatters in %s as u says", (key) => {
+    const pulls = runs.map((run) => run[key]);
+    const mean = pulls.reduce((a, b) => a + b, 0) / 60;
+    expect(Math.abs(mean)).toBeLessThan(4 / Math.sqrt(60));
+    // 60 draws tell a standard deviation to 9 %
+    expect(Math.sqrt(pulls.reduce((sum, p) => sum + (p - mean) ** 2, 0) / 59)).toBeLessThan(1.25);
+  });
+});
