@@ -41,7 +41,10 @@ function reason(level: Level, code: string, text: string, advice: string): Reaso
   return { level, code, text, advice };
 }
 
-const percent = (share: number): string => `${(100 * share).toPrecision(2)} %`;
+/** Two digits, never in powers of ten where it can be helped. */
+const short = (value: number): string => String(Number(value.toPrecision(2)));
+
+const percent = (share: number): string => `${short(100 * share)} %`;
 
 const chance = (p: number): string => (p < 1e-9 ? "below 1e-9" : p.toExponential(0));
 
@@ -146,7 +149,7 @@ function traps({ evidence }: Case): Reason {
   return reason(
     fallsBy(evidence) > 0.5 ? "unsound" : "caution",
     "traps-suspected",
-    `a narrow core stands on a broad foot while the later frames move less (late D ${(10 * late.value).toPrecision(2)} after ${(10 * early.value).toPrecision(2)} cm²/s): trapped excitons light up and stay where they are`,
+    `a narrow core stands on a broad foot while the later frames move less (late D ${short(CM2_PER_S * late.value)} after ${short(CM2_PER_S * early.value)} cm²/s): trapped excitons light up and stay where they are`,
     "restrict the window to the early frames with --to, and compare spots, temperatures and excitation: traps fill at higher density and empty at higher temperature",
   );
 }

@@ -64,7 +64,7 @@ export function analysed(stack: Stack, options: AnalysisOptions = {}): Analysis 
   const analysis = analyse(stack, options);
   resultSchema.parse(analysis.result);
   const broken = brokenNumbers(analysis.result);
-  if (broken.length > 0) throw new Error(`not finite: ${broken.join(", ")}`);
+  if (broken.length > 0) throw new Error(`not fit to print: ${broken.join(", ")}`);
   for (const point of [...analysis.spreadCurve, ...analysis.lightCurve]) {
     if (![point.delay, point.value, point.u].every(Number.isFinite)) throw new Error("a curve is not finite");
   }
@@ -77,7 +77,8 @@ export function resultOf(stack: Stack, options: AnalysisOptions = {}): Result {
 
 function brokenNumbers(value: unknown, path = "result"): string[] {
   if (typeof value === "number") return Number.isFinite(value) ? [] : [path];
-  if (typeof value === "string") return /NaN|Infinity|undefined/.test(value) ? [`${path}: ${value}`] : [];
+  if (typeof value === "string")
+    return /NaN|Infinity|undefined|\de\+\d/.test(value) ? [`${path}: ${value}`] : [];
   if (value === null || typeof value !== "object") return [];
   return Object.entries(value).flatMap(([key, inner]) => brokenNumbers(inner, `${path}.${key}`));
 }
