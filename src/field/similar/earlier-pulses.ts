@@ -1,0 +1,117 @@
+import { type Background, type Flow, flowOf } from "./flow.ts";
+import type { Shape } from "./shape.ts";
+import type { Timeline } from "./timeline.ts";
+
+/** Light that has fallen to this share is forgotten. */
+const FORGOTTEN = 1e-8;
+/** The steady state stands when the earlier pulses' density changes by less than this part of the peak. */
+const STANDS = 1e-7;
+const MOST_ROUNDS = 60;
+
+/** How long free excitons of one pulse matter, ns. */
+export function memory(removal: number): number {
+  return -Math.log(FORGOTTEN) / removal;
+}
+
+/**
+ * One pulse among all the earlier ones: the densities p(age) of all pulses obey
+ * p_t = ∇·D∇p − λp − κp(p + 2ℓ), ℓ(age) = Σ_(i≥1) p(age + iT), and add up to the whole density, n = Σ p: each pair of
+ * pulses annihilates in two halves, and the younger carries both of them. So every pulse keeps its own width, and the
+ * steady state is a fixed point of ℓ, found by iteration.
+ */
+export function steadyFlow(shape: Shape, timeline: Timeline, period: number): Flow {
+  let flow = flowOf(shape, timeline, null);
+  if (timeline.rates.annihilation === 0) return flow;
+  let background = left(flow, period);
+  for (let round = 0; round < MOST_ROUNDS; round++) {
+    flow = flowOf(shape, timeline, background);
+    const next = left(flow, period);
+    let change = 0;
+    background = background.map((before, i) =>
+      before.map((value, j) => {
+        const decay = Math.exp(-timeline.rates.removal * timeline.times[i]!);
+        change = Math.max(change, Math.abs(next[i]![j]! - value) * decay);
+        return 0.5 * (value + next[i]![j]!);
+      }),
+    );
+    if (change < STANDS) break;
+  }
+  return flow;
+}
+
+/** ℓ at the shape's nodes at each time, times e^(λt). */
+function left(flow: Flow, period: number): Background {
+  const { timeline, shape } = flow;
+  const weights = new Float64Array(timeline.size);
+  const coefficients = new Float64Array(shape.size);
+  return timeline.times.map((age) => {
+    const sum = new Float64Array(shape.size);
+    const here = timeline.scales(age);
+    for (let t = age + period; t <= timeline.end; t += period) {
+      weights.fill(0);
+      timeline.addReading(t, Math.exp(-timeline.rates.removal * (t - age)), weights);
+      combine(flow.coefficients, weights, coefficients);
+      const there = timeline.scales(t);
+      if (shape.planar) addPlanar(shape, coefficients, here, there, sum);
+      else addRound(shape, coefficients, here[0], there[0], sum);
+    }
+    return sum;
+  });
+}
+
+/** out = Σ weights·states. */
+export function combine(states: readonly Float64Array[], weights: Float64Array, out: Float64Array): void {
+  out.fill(0);
+  for (let k = 0; k < weights.length; k++) {
+    const w = weights[k]!;
+    if (w === 0) continue;
+    const state = states[k]!;
+    for (let j = 0; j < out.length; j++) out[j] = out[j]! + w * state[j]!;
+  }
+}
+
+function addRound(shape: Shape, a: Float64Array, here: number, there: number, sum: Float64Array): void {
+  const { basis } = shape;
+  const row = new Float64Array(basis.size);
+  for (let j = 0; j < basis.size; j++) {
+    const z = (basis.z[j]! * here) / there;
+    basis.evaluate(z, Math.exp(-z) / there, basis.size, row, 0);
+    let value = 0;
+    for (let k = 0; k < basis.size; k++) value += a[k]! * row[k]!;
+    sum[j] = sum[j]! + Math.max(value, 0);
+  }
+}
+
+function addPlanar(
+  shape: Shape,
+  a: Float64Array,
+  here: readonly [number, number],
+  there: readonly [number, number],
+  sum: Float64Array,
+): void {
+  const n = shape.basis.size;
+  const [first, second] = [0, 1].map((axis) => nodeTable(shape, here[axis]! / there[axis]!, there[axis]!));
+  const half = new Float64Array(n);
+  for (let i = 0; i < n; i++) {
+    half.fill(0);
+    for (let k = 0; k < n; k++) {
+      const f = first![i * n + k]!;
+      for (let l = 0; l < n; l++) half[l] = half[l]! + f * a[k * n + l]!;
+    }
+    for (let j = 0; j < n; j++) {
+      let value = 0;
+      for (let l = 0; l < n; l++) value += half[l]! * second![j * n + l]!;
+      sum[i * n + j] = sum[i * n + j]! + Math.max(value, 0);
+    }
+  }
+}
+
+function nodeTable({ basis }: Shape, ratio: number, scale: number): Float64Array {
+  const n = basis.size;
+  const table = new Float64Array(n * n);
+  for (let j = 0; j < n; j++) {
+    const z = basis.z[j]! * ratio;
+    basis.evaluate(z, Math.exp(-z) / Math.sqrt(scale), n, table, j * n);
+  }
+  return table;
+}

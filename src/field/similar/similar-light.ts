@@ -1,0 +1,220 @@
+import { changeRate, exposures } from "../exposure.ts";
+import type { Medium, Start } from "../medium.ts";
+import { combine, memory, steadyFlow } from "./earlier-pulses.ts";
+import { type Flow, flowOf } from "./flow.ts";
+import { plainLight } from "./plain-light.ts";
+import type { SimilarLight, SimilarProblem } from "./problem.ts";
+import { fillPlanar, fillRound, fillStrip, logQuarter } from "./profile.ts";
+import { type Optics, planarScreen, REACH, roundScreen, stripScreen } from "./screen.ts";
+import { shapeOf } from "./shape.ts";
+import { Timeline } from "./timeline.ts";
+import { dot, type FrameWeights, frameWeights, lightWeights } from "./weights.ts";
+import { type Whitened, whitened } from "./whitened.ts";
+
+/** Standard deviations after which the response has ended (see `exposures`). */
+const RESPONSE_REACH = 6;
+
+/**
+ * How finely a problem is resolved. A fit that takes differences of lights computes all of them with one resolution, so
+ * that the small errors are the same in both and cancel.
+ */
+export interface Resolution {
+  /** Basis functions along an axis. */
+  readonly modes: number;
+  /** Panels of the timeline. */
+  readonly panels: number;
+  /** Distance of the profile's points, in narrowest widths: along a radius, and on each axis of a quarter plane. */
+  readonly radialStep: number;
+  readonly planarStep: number;
+}
+
+/**
+ * Fine enough for profiles right to 1e-5 of their peak.
+ *
+ * Annihilation flattens the top, diffusion rounds it again: modes go with ln(κ/d), measured against 64 modes for k n₀ τ
+ * up to 30.
+ */
+export function resolutionOf(problem: SimilarProblem): Resolution {
+  const { diffusion } = whitened(problem);
+  const rates = ratesOf(problem, diffusion);
+  const line = new Timeline(rates, endOf(problem));
+  const meeting = line.decayed(line.end);
+  const sharp = rates.annihilation / (Math.max(diffusion[1], 0) + 0.05 / meeting);
+  const modes = meeting > 0 ? 14 + 5 * Math.log1p(sharp) : 14;
+  return {
+    modes: Math.min(4 * Math.ceil(modes / 4), 52),
+    panels: line.panels,
+    radialStep: 0.04,
+    planarStep: 0.12,
+  };
+}
+
+/**
+ * The mean light of a recording's frames; reaction and diffusion as in `Medium`, in the whitened frame (see
+ * `whitened`) by a basis that spreads with the spot (see `LaguerreBasis`, `flowOf`, `Timeline`).
+ *
+ * @throws RangeError where Σ₀ is not positive definite, or a negative D makes the spot shrink to less than a third
+ */
+export function similarLight(problem: SimilarProblem, resolution?: Resolution): SimilarLight {
+  if (problem.annihilation === 0 && problem.capture === 0) return plainLight(problem);
+  const { annihilation, capture, lifetime, period } = problem;
+  if (
+    period !== null &&
+    !(1 / lifetime + capture > 0 && (capture === 0 || problem.trapLifetime < Infinity))
+  ) {
+    throw new RangeError("Excitons that never end pile up over the pulses: give a lifetime or no period.");
+  }
+  const frame = whitened(problem);
+  const flow = flowFor(problem, frame, resolution ?? resolutionOf(problem));
+  // rates of change do not depend on the unit: a peak of 1 after a pulse
+  const medium: Medium = { ...problem, annihilation, capture };
+  const start: Start = { amount: 2 * Math.PI * frame.area, covariance: problem.start };
+  const list = exposures(problem, changeRate(medium, start));
+  const weights = frameWeights(flow.timeline, list, problem.delays.length, period);
+  const steps = resolution ?? resolutionOf(problem);
+  if (problem.kind === "trace") return stripLight(problem, frame, flow, weights, steps);
+  return frame.round
+    ? roundLight(problem, frame, flow, weights, steps)
+    : planarLight(problem, frame, flow, weights, steps);
+}
+
+export function flowFor(problem: SimilarProblem, frame: Whitened, resolution: Resolution): Flow {
+  const timeline = new Timeline(ratesOf(problem, frame.diffusion), endOf(problem), resolution.panels);
+  if (!(Math.min(...timeline.scales(timeline.end)) > 1 / 3)) {
+    throw new RangeError(
+      "The diffusion coefficient is so negative that the spot shrinks to less than a third.",
+    );
+  }
+  const shape = shapeOf(frame.round, resolution.modes);
+  return problem.period === null
+    ? flowOf(shape, timeline, null)
+    : steadyFlow(shape, timeline, problem.period);
+}
+
+function ratesOf(problem: SimilarProblem, diffusion: readonly [number, number]) {
+  return {
+    diffusion,
+    removal: 1 / problem.lifetime + problem.capture,
+    annihilation: problem.annihilation,
+    capture: problem.capture,
+    trapRate: 1 / problem.trapLifetime,
+  };
+}
+
+function endOf({ delays, gate, period, lifetime, capture, responseSigma }: SimilarProblem): number {
+  const last = Math.max(0, ...delays) + gate + RESPONSE_REACH * responseSigma;
+  return period === null ? last : Math.max(Math.min(last, period), memory(1 / lifetime + capture));
+}
+
+function opticsOf({ kind, pixel }: SimilarProblem, frame: Whitened): Optics {
+  const strength = kind === "map" ? -(pixel ** 4) / 2880 : 0;
+  const [x1, y1, x2, y2] = frame.map;
+  const fourth: Optics["fourth"] = frame.round
+    ? [0.75 * strength * (x1 * x1 + y1 * y1) ** 2, 0, 0]
+    : [
+        strength * (x1 ** 4 + y1 ** 4),
+        6 * strength * (x1 * x1 * x2 * x2 + y1 * y1 * y2 * y2),
+        strength * (x2 ** 4 + y2 ** 4),
+      ];
+  return { blur: frame.blur, fourth };
+}
+
+function reachOf(flow: Flow, { blur }: Optics): [number, number] {
+  const end = flow.timeline.scales(flow.timeline.end);
+  return [REACH * Math.sqrt(Math.max(end[0], 1) + blur[0]), REACH * Math.sqrt(Math.max(end[1], 1) + blur[1])];
+}
+
+/** Amounts and shares from each state's own amount; a frame's profile is made when it is first asked for. */
+function collected(
+  problem: SimilarProblem,
+  amounts: Float64Array,
+  weights: readonly FrameWeights[],
+  fill: (weights: Float64Array, frame: number) => SimilarLight["fill"],
+): SimilarLight {
+  const light = weights.map((each) => lightWeights(each, problem.trapLight));
+  const fills: SimilarLight["fill"][] = [];
+  return {
+    amount: (i) => dot(light[i]!, amounts),
+    caughtShare(i) {
+      const { caught } = weights[i]!;
+      const all = dot(light[i]!, amounts);
+      return caught === null || all === 0 ? 0 : (problem.trapLight * dot(caught, amounts)) / all;
+    },
+    fill(i, grid, out) {
+      fills[i] ??= fill(light[i]!, i);
+      fills[i](i, grid, out);
+    },
+  };
+}
+
+function roundLight(
+  problem: SimilarProblem,
+  frame: Whitened,
+  flow: Flow,
+  weights: readonly FrameWeights[],
+  { radialStep }: Resolution,
+): SimilarLight {
+  const optics = opticsOf(problem, frame);
+  const { radius, values } = roundScreen(flow, optics, reachOf(flow, optics)[0], radialStep);
+  const width = Math.sqrt(frame.area);
+  return collected(problem, shares(flow), weights, (light) => {
+    const profile = profileOf(values, light, 1 / (2 * Math.PI * frame.area));
+    return (_, grid, out) => fillRound(profile, radius, width, grid, out);
+  });
+}
+
+function planarLight(
+  problem: SimilarProblem,
+  frame: Whitened,
+  flow: Flow,
+  weights: readonly FrameWeights[],
+  { planarStep }: Resolution,
+): SimilarLight {
+  const optics = opticsOf(problem, frame);
+  const { axes, values } = planarScreen(flow, optics, reachOf(flow, optics), planarStep);
+  return collected(problem, shares(flow), weights, (light) => {
+    const profile = profileOf(values, light, 1);
+    if (!(profile[0]! > 0)) return (_, grid, out) => void out.fill(0, 0, grid.width * grid.height);
+    const table = logQuarter(profile, axes[0].count, axes[1].count);
+    const scale = 1 / (2 * Math.PI * frame.area);
+    return (_, grid, out) => fillPlanar(table, axes, frame, scale, grid, out);
+  });
+}
+
+function stripLight(
+  problem: SimilarProblem,
+  frame: Whitened,
+  flow: Flow,
+  weights: readonly FrameWeights[],
+  { radialStep }: Resolution,
+): SimilarLight {
+  const optics = opticsOf(problem, frame);
+  const width = Math.sqrt(frame.area);
+  const strip = { slit: (problem.slit ?? Infinity) / width, pixel: problem.pixel / width };
+  const { radius, values } = stripScreen(flow, optics, reachOf(flow, optics)[0], radialStep, strip);
+  // trapezoids over the whole line; the integrand is even and dies out
+  const measure = Float64Array.from(
+    { length: radius.count },
+    (_, p) => ((p === 0 ? 1 : 2) * radius.step * radius.slope(p)) / (2 * Math.PI),
+  );
+  const amounts = Float64Array.from(values, (each) => dot(each, measure));
+  return collected(problem, amounts, weights, (light) => {
+    const profile = profileOf(values, light, 1 / (2 * Math.PI * width));
+    return (_, grid, out) => fillStrip(profile, radius, width, grid, out);
+  });
+}
+
+/** Share of the pulse's excitons that annihilation has left, at each time. */
+export function shares(flow: Flow): Float64Array {
+  return Float64Array.from(flow.coefficients, (a) => a[0]!);
+}
+
+function profileOf(values: readonly Float64Array[], light: Float64Array, scale: number): Float64Array {
+  const out = new Float64Array(values[0]!.length);
+  combine(
+    values,
+    light.map((w) => w * scale),
+    out,
+  );
+  return out;
+}
