@@ -60,24 +60,49 @@ function cubic(table: Float64Array, u: number): number {
 /** Logarithms stop here, relative to the peak. */
 const FLOOR = 1e-13;
 
-/** Logarithm of a quarter's values with a mirrored row and column before the first. */
-export function logQuarter(values: Float64Array, rows: number, columns: number): Float64Array {
+/** Logarithms on the quarters x₁x₂ > 0 and x₁x₂ < 0. */
+export type QuarterTables = readonly [same: Float64Array, opposite: Float64Array];
+
+/** Tables with a row and a column before the first, which belong to the other quarter. */
+export function logQuarters(
+  values: Float64Array,
+  rows: number,
+  columns: number,
+  quarters: 1 | 2,
+): QuarterTables {
+  const same = logTable(values, 0, rows, columns);
+  if (quarters === 1) {
+    addBorder(same, same, rows, columns);
+    return [same, same];
+  }
+  const opposite = logTable(values, rows * columns, rows, columns);
+  addBorder(same, opposite, rows, columns);
+  addBorder(opposite, same, rows, columns);
+  return [same, opposite];
+}
+
+function logTable(values: Float64Array, first: number, rows: number, columns: number): Float64Array {
   const wide = columns + 1;
   const table = new Float64Array((rows + 1) * wide);
   const floor = FLOOR * values[0]!;
   for (let p = 0; p < rows; p++) {
     for (let q = 0; q < columns; q++) {
-      table[(p + 1) * wide + q + 1] = Math.log(Math.max(values[p * columns + q]!, floor));
+      table[(p + 1) * wide + q + 1] = Math.log(Math.max(values[first + p * columns + q]!, floor));
     }
-    table[(p + 1) * wide] = table[(p + 1) * wide + 2]!;
   }
-  table.copyWithin(0, 2 * wide, 3 * wide);
   return table;
+}
+
+function addBorder(table: Float64Array, other: Float64Array, rows: number, columns: number): void {
+  const wide = columns + 1;
+  for (let p = 1; p <= rows; p++) table[p * wide] = other[p * wide + 2]!;
+  for (let q = 1; q <= columns; q++) table[q] = other[2 * wide + q]!;
+  table[0] = table[2 * wide + 2]!;
 }
 
 /** A picture from a quarter plane's logarithms: bicubic, exponential, zero beyond. */
 export function fillPlanar(
-  table: Float64Array,
+  [same, opposite]: QuarterTables,
   [along, across]: readonly [StretchedAxis, StretchedAxis],
   { map: [x1, y1, x2, y2] }: Whitened,
   scale: number,
@@ -102,6 +127,7 @@ export function fillPlanar(
         out[at++] = 0;
         continue;
       }
+      const table = p * q < 0 ? opposite : same;
       const iu = u | 0;
       const iv = v | 0;
       const f = v - iv;

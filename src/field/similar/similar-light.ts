@@ -2,10 +2,12 @@ import { changeRate, exposures } from "../exposure.ts";
 import type { Medium, Start } from "../medium.ts";
 import { combine, memory, steadyFlow } from "./earlier-pulses.ts";
 import { type Flow, flowOf } from "./flow.ts";
+import { type Optics, opticsOf } from "./optics.ts";
 import { plainLight } from "./plain-light.ts";
+import { planarScreen } from "./planar-screen.ts";
 import type { SimilarLight, SimilarProblem } from "./problem.ts";
-import { fillPlanar, fillRound, fillStrip, logQuarter } from "./profile.ts";
-import { type Optics, planarScreen, REACH, roundScreen, stripScreen } from "./screen.ts";
+import { fillPlanar, fillRound, fillStrip, logQuarters } from "./profile.ts";
+import { REACH, roundScreen, stripScreen } from "./screen.ts";
 import { shapeOf } from "./shape.ts";
 import { Timeline } from "./timeline.ts";
 import { dot, type FrameWeights, frameWeights, lightWeights } from "./weights.ts";
@@ -106,22 +108,9 @@ function endOf({ delays, gate, period, lifetime, capture, responseSigma }: Simil
   return period === null ? last : Math.max(Math.min(last, period), memory(1 / lifetime + capture));
 }
 
-function opticsOf({ kind, pixel }: SimilarProblem, frame: Whitened): Optics {
-  const strength = kind === "map" ? -(pixel ** 4) / 2880 : 0;
-  const [x1, y1, x2, y2] = frame.map;
-  const fourth: Optics["fourth"] = frame.round
-    ? [0.75 * strength * (x1 * x1 + y1 * y1) ** 2, 0, 0]
-    : [
-        strength * (x1 ** 4 + y1 ** 4),
-        6 * strength * (x1 * x1 * x2 * x2 + y1 * y1 * y2 * y2),
-        strength * (x2 ** 4 + y2 ** 4),
-      ];
-  return { blur: frame.blur, fourth };
-}
-
 function reachOf(flow: Flow, { blur }: Optics): [number, number] {
   const end = flow.timeline.scales(flow.timeline.end);
-  return [REACH * Math.sqrt(Math.max(end[0], 1) + blur[0]), REACH * Math.sqrt(Math.max(end[1], 1) + blur[1])];
+  return [REACH * Math.sqrt(Math.max(end[0], 1) + blur[0]), REACH * Math.sqrt(Math.max(end[1], 1) + blur[2])];
 }
 
 /** Amounts and shares from each state's own amount; a frame's profile is made when it is first asked for. */
@@ -171,13 +160,13 @@ function planarLight(
   { planarStep }: Resolution,
 ): SimilarLight {
   const optics = opticsOf(problem, frame);
-  const { axes, values } = planarScreen(flow, optics, reachOf(flow, optics), planarStep);
+  const { axes, values, quarters } = planarScreen(flow, optics, reachOf(flow, optics), planarStep);
   return collected(problem, shares(flow), weights, (light) => {
     const profile = profileOf(values, light, 1);
     if (!(profile[0]! > 0)) return (_, grid, out) => void out.fill(0, 0, grid.width * grid.height);
-    const table = logQuarter(profile, axes[0].count, axes[1].count);
+    const tables = logQuarters(profile, axes[0].count, axes[1].count, quarters);
     const scale = 1 / (2 * Math.PI * frame.area);
-    return (_, grid, out) => fillPlanar(table, axes, frame, scale, grid, out);
+    return (_, grid, out) => fillPlanar(tables, axes, frame, scale, grid, out);
   });
 }
 

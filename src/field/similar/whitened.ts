@@ -13,8 +13,8 @@ export interface Whitened {
   readonly area: number;
   /** d₁ ≥ d₂, 1/ns. */
   readonly diffusion: readonly [number, number];
-  /** Blur's variance along each axis. Its correlation is left out: it is nonzero only where neither Σ₀ nor D is round and their axes differ. */
-  readonly blur: readonly [number, number];
+  /** Covariance of the blur, [11, 12, 22]; 12 is nonzero only where neither Σ₀ nor D is round and their axes differ. */
+  readonly blur: Covariance;
   readonly round: boolean;
 }
 
@@ -50,10 +50,11 @@ function whiten([xx, xy, yy]: Covariance, diffusion: Covariance, blurVariance: n
   const angle = Math.atan2(2 * qxy, qxx - qyy) / 2;
   const [c, s] = [Math.cos(angle), Math.sin(angle)];
   const rows = [c * a + s * b, s * d, -s * a + c * b, c * d] as const;
-  const blur = [
+  const blur: Covariance = [
     blurVariance * (rows[0] ** 2 + rows[1] ** 2),
+    blurVariance * (rows[0] * rows[2] + rows[1] * rows[3]),
     blurVariance * (rows[2] ** 2 + rows[3] ** 2),
-  ] as const;
+  ];
   const blurIsRound = xx === yy && xy === 0;
   return {
     map: rows,
