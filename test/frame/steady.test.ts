@@ -47,6 +47,21 @@ describe("the steady course through a quantity", () => {
     expect(constant).toBeGreaterThanOrEqual(292);
   });
 
+  it("does not follow the scatter of a few faint frames, though it is twice what it should be", () => {
+    const random = createRandom(5);
+    const few = times.slice(0, 13);
+    const values = few.map(() => 5 + random.normal());
+    const sum = values.reduce((a, v) => a + (v - 5) ** 2, 0);
+    // scaled so that χ² is 2.3 times its degrees of freedom, which chance gives less than once in a hundred
+    const steady = steadyCourse(
+      few,
+      values,
+      Float64Array.from(few, () => sum / (2.3 * 12)),
+      fits,
+    );
+    expect(steady.kind).toBe("constant");
+  });
+
   it("passes over frames without a value, and says something about them too", () => {
     const random = createRandom(4);
     const values = times.map((t, i) => (i % 7 === 3 ? Number.NaN : 2 * t + 0.1 * random.normal()));

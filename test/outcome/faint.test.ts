@@ -28,3 +28,20 @@ describe("a recording of so little light that frames hold a few photons", () => 
     expect(sd).toBeLessThan(1.7);
   });
 });
+
+describe("frames without a single photon", () => {
+  it("count in the decay where their neighbours hold a few", () => {
+    const { stack } = recorded({ recording: { photons: 60, background: 0, frames: 100 } }, 7);
+    const { frames } = resultOf(stack);
+    const zeros = frames.filter((frame) => {
+      const data = new Float64Array(stack.width * stack.height);
+      stack.read(frame.index, data);
+      return data.every((value) => value === 0);
+    });
+    expect(zeros.length).toBeGreaterThan(5);
+    for (const frame of zeros) {
+      expect(frame.flags).not.toContain("empty");
+      expect(frame.used_in_decay).toBe(true);
+    }
+  });
+});

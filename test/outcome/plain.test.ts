@@ -107,6 +107,14 @@ describe("what lies off the plain road", () => {
     expect(Math.abs(pull(lifetime!, truth.lifetime_ns))).toBeLessThan(4);
   });
 
+  it("gates are placed by their middle: the intercept is the spot at the pulse, blur and pixel included", () => {
+    const { stack, truth } = recorded({ time: { gate: "0.3 ns" } }, 3);
+    const { intercept } = resultOf(stack).transport.models.line!.parameters;
+    const start = truth.initial_variance_um2[0] + truth.blur_variance_um2 + truth.pixel_variance_um2;
+    expect(Math.abs(intercept!.value - start)).toBeLessThan(4 * intercept!.u);
+    expect(intercept!.u).toBeLessThan(0.2 * 2 * 0.02 * 0.15);
+  });
+
   it("a drifting spot spreads as one at rest, and the drift is said", () => {
     const { stack, truth } = recorded({ motion: { drift_x: "30 nm/ns" } }, 2);
     const result = resultOf(stack);

@@ -1,4 +1,8 @@
 import { describe, expect, it } from "vitest";
+import { fitDecays } from "../../src/decay/fit.ts";
+import { joinFits } from "../../src/outcome/joint.ts";
+import { readRecording } from "../../src/outcome/read-recording.ts";
+import { transmission } from "../../src/outcome/transmission.ts";
 import { pull, recorded, resultOf } from "./recordings.ts";
 
 const LINE = {
@@ -38,22 +42,32 @@ describe("a streak trace", () => {
   });
 });
 
-describe("a trace behind a slit over many draws", () => {
-  // the law of spread says how much light leaves sideways, so its error is one of the lifetime
-  const runs = Array.from({ length: 60 }, (_, seed) => {
-    const { stack, truth } = recorded(
-      { ...LINE, recording: { ...LINE.recording, photons: 1500 }, slit: { width: "0.3 um" } },
-      900 + seed,
-    );
-    const { lifetime, diffusion_length: length } = resultOf(stack).quantities;
-    return { tau: pull(lifetime!, truth.lifetime_ns), length: pull(length!, truth.diffusion_length_um) };
-  });
-
-  it.each(["tau", "length"] as const)("scatters in %s as u says", (key) => {
-    const pulls = runs.map((run) => run[key]);
-    const mean = pulls.reduce((a, b) => a + b, 0) / 60;
-    expect(Math.abs(mean)).toBeLessThan(4 / Math.sqrt(60));
-    // 60 draws tell a standard deviation to 9 %
-    expect(Math.sqrt(pulls.reduce((sum, p) => sum + (p - mean) ** 2, 0) / 59)).toBeLessThan(1.25);
+describe("the lifetime behind a slit", () => {
+  it("answers to an error of D by the light read anew and by the light that leaves sideways", () => {
+    const { stack } = recorded({ ...LINE, slit: { width: "0.3 um" } });
+    const reading = readRecording(stack);
+    const { light, times, models, line } = reading;
+    const lifetimeAt = (shift: number): number => {
+      const pick = (f: (i: number) => number) => Float64Array.from(light.frames, f);
+      const grown = {
+        ...models,
+        variance: (i: number) => models.variance(i).map((v) => v + 2 * shift * times[i]!),
+      };
+      return fitDecays({
+        delays: pick((i) => stack.acquisition.time.delays[i]!),
+        gate: stack.acquisition.time.gate,
+        response: null,
+        period: null,
+        light: pick((i) => light.value[i]! + light.perVariance[i]![0]! * 2 * shift * times[i]!),
+        sigma: pick((i) => light.sigma[i]!),
+        transmission: transmission(stack.acquisition, "trace", grown, light.frames),
+        emissionOrder: 1,
+      }).fits.exponential!.lifetime.value;
+    };
+    const h = 1e-5;
+    // with a unit covariance of (Σ₀, D) the shared covariance is the answer itself
+    const unit = { ...line, covariance: Float64Array.of(1, 0, 0, 1), chi2: line.degreesOfFreedom };
+    const { cross } = joinFits({ ...reading, line: unit });
+    expect(cross[1 * 2 + 1]! / ((lifetimeAt(h) - lifetimeAt(-h)) / (2 * h))).toBeCloseTo(1, 2);
   });
 });
