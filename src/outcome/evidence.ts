@@ -130,7 +130,7 @@ function addUp(
 }
 
 /** D before and after the middle of the slope's information. */
-function halves(reading: Reading): { early: Sign; late: Sign } {
+export function halves(reading: Reading): { early: Sign; late: Sign } {
   const { widths } = reading;
   const weights = widths.map((w) => 1 / perAxisVariance(w));
   const total = weights.reduce((a, b) => a + b, 0);

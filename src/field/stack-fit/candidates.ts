@@ -1,0 +1,113 @@
+import { akaikeWeights, correctedAkaike } from "../../numerics/model-choice.ts";
+import type { StackOptimum } from "./fit-stack.ts";
+import { fitStack } from "./fit-stack.ts";
+import type { Goodness } from "./goodness.ts";
+import { goodnessOf } from "./goodness.ts";
+import type { Candidate, Symmetry, Values } from "./parameters.ts";
+import { CANDIDATES, namesOf, valuesOf } from "./parameters.ts";
+import type { StackData } from "./stack-data.ts";
+
+export interface CandidateFit extends StackOptimum {
+  readonly candidate: Candidate;
+  readonly goodness: Goodness;
+  readonly aicc: number;
+  /** Corrected Akaike weight among the converged candidates. */
+  readonly weight: number;
+}
+
+export interface StackFits {
+  readonly fits: readonly CandidateFit[];
+  readonly preferred: CandidateFit;
+  readonly symmetry: Symmetry;
+}
+
+/** How much lower, in corrected Akaike units, a richer candidate must lie for each parameter that it adds. */
+const PRICE = 4;
+
+/**
+ * Fits the candidates of a whole stack (diffusion; with annihilation; with capture; with both) and chooses: a richer
+ * candidate must beat every poorer one by 4 corrected Akaike units a parameter beyond the criterion's own price, so
+ * that plain stacks keep the plain model in more than 95 % of cases (for one parameter chance gives a fall of
+ * χ² by 6 in 1.4 %, for two by 12 in 0.2 %).
+ *
+ * Caught excitons are taken to shine like free ones (ε = 1): the light tells λ = 1/τ + c and ε·c, not the three apart.
+ *
+ * @param start values of plain diffusion, from widths and decay
+ * @param hint k·n₀ by the decay of the light, 1/ns, where it gives one
+ */
+export function fitCandidates(
+  data: StackData,
+  symmetry: Symmetry,
+  start: Values,
+  hint: number | null,
+): StackFits {
+  const found: Omit<CandidateFit, "weight">[] = [];
+  const pixels = data.frames.reduce((sum, { patch }) => sum + patch.data.length, 0);
+  for (const candidate of CANDIDATES) {
+    const names = namesOf(data.kind, candidate, symmetry);
+    const starts = startsOf(candidate, start, hint, found);
+    const optima = starts.map((values) => fitStack(data, names, values));
+    const best = optima.reduce((a, b) => (b.deviance < a.deviance ? b : a));
+    found.push({
+      ...best,
+      candidate,
+      goodness: goodnessOf(data, names, best.parameters),
+      aicc: correctedAkaike(best.deviance, names.length, pixels),
+    });
+  }
+  const usable = found.filter((fit) => fit.converged);
+  const weights = akaikeWeights(usable.map((fit) => fit.aicc));
+  const fits = found.map((fit) => ({ ...fit, weight: weights[usable.indexOf(fit)] ?? 0 }));
+  return { fits, preferred: prefer(fits), symmetry };
+}
+
+function prefer(fits: readonly CandidateFit[]): CandidateFit {
+  let best = fits[0]!;
+  for (const fit of fits.slice(1)) {
+    if (!fit.converged) continue;
+    const added = fit.names.length - best.names.length;
+    const price = added > 0 ? PRICE * added : 0;
+    if (!best.converged || fit.aicc < best.aicc - price) best = fit;
+  }
+  return best;
+}
+
+/** Starts of a candidate from the plain fit or the fit before it. */
+function startsOf(
+  candidate: Candidate,
+  start: Values,
+  hint: number | null,
+  found: readonly Omit<CandidateFit, "weight">[],
+): Values[] {
+  const before = (name: Candidate["name"]): Values | null => {
+    const fit = found.find((each) => each.candidate.name === name);
+    return fit === undefined ? null : valuesOf(fit.names, fit.parameters);
+  };
+  const plain = before("diffusion") ?? start;
+  const tau = plain.tau!;
+  const trapped = (base: Values, share: number, life: number): Values =>
+    ({
+      ...base,
+      capture: share / tau,
+      trap_lifetime: life * tau,
+      D: base.D === undefined ? undefined : base.D * (1 + share),
+      D_xx: base.D_xx === undefined ? undefined : base.D_xx * (1 + share),
+      D_yy: base.D_yy === undefined ? undefined : base.D_yy * (1 + share),
+    }) as Values;
+  switch (candidate.name) {
+    case "diffusion":
+      return [start];
+    case "annihilation":
+      return [{ ...plain, k_n0: hint ?? 0.2 / tau }];
+    case "capture":
+      return [trapped(plain, 0.3, 1.5), trapped({ ...plain, tau: tau / 2 }, 0.6, 4)];
+    case "annihilation_and_capture": {
+      const capture = before("capture");
+      const annihilation = before("annihilation");
+      return [
+        ...(capture === null ? [] : [{ ...capture, k_n0: 0.05 / tau }]),
+        ...(annihilation === null ? [] : [trapped(annihilation, 0.2, 2)]),
+      ];
+    }
+  }
+}

@@ -1,0 +1,133 @@
+import { invertSymmetric, solveSymmetric } from "../../numerics/linear-algebra.ts";
+import type { Name, Values } from "./parameters.ts";
+import { valuesOf } from "./parameters.ts";
+import { deviance, naturalSize, scoreStack } from "./score-stack.ts";
+import type { StackData } from "./stack-data.ts";
+
+export interface StackOptimum {
+  readonly names: readonly Name[];
+  readonly parameters: Float64Array;
+  /** Inverse Fisher matrix, row-major. */
+  readonly covariance: Float64Array;
+  /** −2 ln L up to a constant that all candidates share. */
+  readonly deviance: number;
+  readonly converged: boolean;
+  readonly reason: string;
+  readonly iterations: number;
+}
+
+const MOST_STEPS = 30;
+/** The fit stands when the step that is left is shorter than this, in standard deviations. */
+const STANDSTILL = 0.01;
+const MOST_DAMPING = 1e6;
+
+/**
+ * Maximum likelihood of a whole stack by damped Fisher scoring: (I + λ·diag I)·δ = s, λ down by ten where −2 ln L falls
+ * and up by ten where it does not (Levenberg's damping with Marquardt's scaling, SIAM J. Appl. Math. 11 (1963) 431, on
+ * the scoring equations of McCullagh and Nelder 1989, section 2.5).
+ *
+ * @param start every parameter in `names`
+ */
+export function fitStack(data: StackData, names: readonly Name[], start: Values): StackOptimum {
+  const n = names.length;
+  let p: Float64Array = Float64Array.from(names, (name) => start[name]!);
+  let cost = deviance(data, names, p);
+  let damping = 1e-4;
+  let iterations = 0;
+  let reason = "the step limit was reached";
+  let converged = false;
+  let { score, information } = scoreStack(data, names, p);
+  while (iterations < MOST_STEPS) {
+    iterations++;
+    const left = stepLength(information, score, n);
+    if (left !== null && left < STANDSTILL) {
+      converged = true;
+      reason = "a maximum was reached";
+      break;
+    }
+    const next = descend(data, names, p, cost, score, information, damping);
+    if (next === null) {
+      // nothing nearby is better: the rounding of −2 ln L hides the rest of a short step
+      converged = left !== null && left < 0.2;
+      reason = converged ? "a maximum was reached" : "no step improves the fit";
+      break;
+    }
+    ({ p, cost, damping } = next);
+    ({ score, information } = scoreStack(data, names, p));
+  }
+  const covariance = information.slice();
+  const determined = invertSymmetric(covariance, n);
+  if (!determined) reason = "the data do not determine every parameter";
+  return {
+    names,
+    parameters: p,
+    covariance,
+    deviance: cost,
+    converged: converged && determined,
+    reason,
+    iterations,
+  };
+}
+
+/** √(sᵀI⁻¹s): the undamped step in standard deviations; null where the information is singular. */
+function stepLength(information: Float64Array, score: Float64Array, n: number): number | null {
+  const step = score.slice();
+  if (!solveSymmetric(information.slice(), n, step)) return null;
+  return Math.sqrt(
+    Math.max(
+      step.reduce((sum, each, i) => sum + each * score[i]!, 0),
+      0,
+    ),
+  );
+}
+
+function descend(
+  data: StackData,
+  names: readonly Name[],
+  p: Float64Array,
+  cost: number,
+  score: Float64Array,
+  information: Float64Array,
+  damping: number,
+): { p: Float64Array; cost: number; damping: number } | null {
+  const n = names.length;
+  const v = valuesOf(names, p);
+  for (let lambda = damping; lambda < MOST_DAMPING; lambda *= 10) {
+    const damped = information.slice();
+    for (let i = 0; i < n; i++) {
+      damped[i * n + i]! *= 1 + lambda;
+      // a parameter that the data say nothing of yet stays within some natural sizes of where it is
+      damped[i * n + i]! += lambda / naturalSize(names[i]!, v) ** 2;
+    }
+    const step = score.slice();
+    if (!solveSymmetric(damped, n, step)) continue;
+    const trial = p.map((value, i) => value + step[i]!);
+    keepPossible(names, p, trial);
+    const trialCost = tryDeviance(data, names, trial);
+    if (trialCost !== null && trialCost < cost)
+      return { p: trial, cost: trialCost, damping: Math.max(lambda / 10, 1e-7) };
+  }
+  return null;
+}
+
+/** −2 ln L, or null where no light follows from the parameters. */
+function tryDeviance(data: StackData, names: readonly Name[], p: Float64Array): number | null {
+  try {
+    const cost = deviance(data, names, p);
+    return Number.isFinite(cost) ? cost : null;
+  } catch (error) {
+    if (error instanceof RangeError) return null;
+    throw error;
+  }
+}
+
+/** Positive quantities shrink to a third of themselves at most in one step; rates may go a little below zero. */
+function keepPossible(names: readonly Name[], from: Float64Array, to: Float64Array): void {
+  const tau = valuesOf(names, from).tau!;
+  for (const [i, name] of names.entries()) {
+    const positive = ["amplitude", "s", "s_xx", "s_yy", "tau", "trap_lifetime"].includes(name);
+    if (positive) to[i] = Math.min(Math.max(to[i]!, from[i]! / 3), 5 * from[i]!);
+    if (name === "background") to[i] = Math.max(to[i]!, 1e-7);
+    if (name === "k_n0" || name === "capture") to[i] = Math.max(to[i]!, -0.3 / tau);
+  }
+}

@@ -1,0 +1,196 @@
+import type { NoiseLaw } from "../../frame/patch.ts";
+import { pixelVariance } from "../../frame/patch.ts";
+import type { SimilarLight } from "../similar/problem.ts";
+import { type Resolution, resolutionOf, similarLight } from "../similar/similar-light.ts";
+import { type Name, problemOf, type Values, valuesOf } from "./parameters.ts";
+import type { StackData, StackFrame } from "./stack-data.ts";
+
+/** Quasi-score and Fisher information of all pixels of all frames. */
+export interface StackScore {
+  readonly score: Float64Array;
+  /** Row-major. */
+  readonly information: Float64Array;
+}
+
+/** Light per pixel for one photon of amplitude, and where the centre stands. */
+interface Rendering {
+  readonly light: SimilarLight;
+  readonly x: number;
+  readonly y: number;
+}
+
+function render(data: StackData, v: Values, resolution: Resolution): Rendering {
+  return { light: similarLight(problemOf(data, v), resolution), x: v.x!, y: v.y ?? 0 };
+}
+
+/** The mean of frame k's pixels without background, photons for amplitude 1, into `out`. */
+function paint(data: StackData, { light, x, y }: Rendering, k: number, out: Float64Array): void {
+  const { patch, shift } = data.frames[k]!;
+  const { pixel, kind } = data;
+  const { x0, y0, width, height } = patch.rectangle;
+  const grid = { x0: x0 * pixel - x - shift[0], y0: y0 * pixel - y - shift[1], pixel, width, height };
+  light.fill(k, grid, out);
+  const area = kind === "map" ? pixel * pixel : pixel;
+  for (let i = 0; i < width * height; i++) out[i]! *= area;
+}
+
+/** Step of the central differences, as a share of a parameter's natural size. */
+const DIFFERENCE = 2e-3;
+
+/** How much of a change matters, by what the parameter is. */
+export function naturalSize(name: Name, v: Values): number {
+  const variance = v.s ?? Math.sqrt(Math.max(v.s_xx! * v.s_yy! - v.s_xy! ** 2, 1e-12));
+  switch (name) {
+    case "x":
+    case "y":
+      return Math.sqrt(variance);
+    case "s":
+    case "s_xx":
+    case "s_xy":
+    case "s_yy":
+      return variance;
+    case "D":
+    case "D_xx":
+    case "D_xy":
+    case "D_yy":
+      return variance / v.tau!;
+    case "k_n0":
+    case "capture":
+      return 1 / v.tau!;
+    case "tau":
+      return v.tau!;
+    case "trap_lifetime":
+      return v.trap_lifetime!;
+    case "amplitude":
+      return v.amplitude!;
+    case "background":
+      return Math.max(Math.abs(v.background!), 1e-3);
+  }
+}
+
+/**
+ * Score Σ (d − m)/v·∂m/∂p and information Σ ∂m/∂p·∂m/∂q/v over all pixels of all frames, the pooled ones included;
+ * v from the model. Derivatives by the amplitude and the background are exact, the others central differences of the
+ * solver's light at one resolution.
+ */
+export function scoreStack(data: StackData, names: readonly Name[], p: Float64Array): StackScore {
+  const n = names.length;
+  const v = valuesOf(names, p);
+  const resolution = resolutionOf(problemOf(data, v));
+  const base = render(data, v, resolution);
+  const sides = names.map((name) => {
+    if (name === "amplitude" || name === "background") return null;
+    const h = DIFFERENCE * naturalSize(name, v);
+    const moved = (by: number): Rendering =>
+      name === "x" || name === "y"
+        ? { ...base, [name]: v[name]! + by }
+        : render(data, { ...v, [name]: v[name]! + by }, resolution);
+    return { plus: moved(h), minus: moved(-h), scale: v.amplitude! / (2 * h) };
+  });
+  const largest = Math.max(...data.frames.map(({ patch }) => patch.data.length));
+  const image = new Float64Array(largest);
+  const other = new Float64Array(largest);
+  const columns = names.map(() => new Float64Array(largest));
+  const score = new Float64Array(n);
+  const information = new Float64Array(n * n);
+  for (let k = 0; k < data.frames.length; k++) {
+    const frame = data.frames[k]!;
+    const count = frame.patch.data.length;
+    paint(data, base, k, image);
+    for (const [j, side] of sides.entries()) {
+      const column = columns[j]!;
+      if (names[j] === "amplitude") column.set(image.subarray(0, count));
+      else if (side === null) column.fill(1, 0, count);
+      else {
+        paint(data, side.plus, k, column);
+        paint(data, side.minus, k, other);
+        for (let i = 0; i < count; i++) column[i] = (column[i]! - other[i]!) * side.scale;
+      }
+    }
+    addFrame(frame, image, columns, v, data.noise, score, information);
+    addPool(frame, names.indexOf("background"), v, data.noise, score, information);
+  }
+  for (let a = 0; a < n; a++) for (let b = 0; b < a; b++) information[b * n + a] = information[a * n + b]!;
+  return { score, information };
+}
+
+function addFrame(
+  { patch, background }: StackFrame,
+  image: Float64Array,
+  columns: readonly Float64Array[],
+  v: Values,
+  noise: NoiseLaw,
+  score: Float64Array,
+  information: Float64Array,
+): void {
+  const n = columns.length;
+  const level = v.background! + background;
+  const excluded = new Set(patch.excluded);
+  const row = new Float64Array(n);
+  for (let i = 0; i < patch.data.length; i++) {
+    if (excluded.size > 0 && excluded.has(i)) continue;
+    const mean = v.amplitude! * image[i]! + level;
+    const w = 1 / pixelVariance(noise, mean);
+    const residual = (patch.data[i]! - mean) * w;
+    for (let a = 0; a < n; a++) row[a] = columns[a]![i]!;
+    for (let a = 0; a < n; a++) {
+      const slope = row[a]!;
+      if (slope === 0) continue;
+      score[a]! += residual * slope;
+      const weighted = w * slope;
+      for (let b = 0; b <= a; b++) information[a * n + b]! += weighted * row[b]!;
+    }
+  }
+}
+
+function addPool(
+  { patch, background }: StackFrame,
+  at: number,
+  v: Values,
+  noise: NoiseLaw,
+  score: Float64Array,
+  information: Float64Array,
+): void {
+  const level = v.background! + background;
+  const w = 1 / pixelVariance(noise, level);
+  score[at]! += (patch.outerSum - patch.outerCount * level) * w;
+  information[at * score.length + at]! += patch.outerCount * w;
+}
+
+/** Called with every pixel that counts: data, mean, frame's place and pixel's index. */
+export type Visit = (value: number, mean: number, k: number, index: number) => void;
+
+/**
+ * −2 ln L up to a constant: Poisson where photons are counted without read noise, else normal with the model's variance.
+ *
+ * @param visit also sees every pixel of the patches
+ */
+export function deviance(data: StackData, names: readonly Name[], p: Float64Array, visit?: Visit): number {
+  const v = valuesOf(names, p);
+  const { noise } = data;
+  const base = render(data, v, resolutionOf(problemOf(data, v)));
+  const image = new Float64Array(Math.max(...data.frames.map(({ patch }) => patch.data.length)));
+  const counting = noise.floor === 0 && noise.excess === 1;
+  const cost = (value: number, mean: number): number => {
+    const variance = pixelVariance(noise, mean);
+    return counting
+      ? 2 * (mean - value * Math.log(variance))
+      : (value - mean) ** 2 / variance + Math.log(variance);
+  };
+  let sum = 0;
+  for (const [k, { patch, background }] of data.frames.entries()) {
+    paint(data, base, k, image);
+    const level = v.background! + background;
+    const excluded = new Set(patch.excluded);
+    for (let i = 0; i < patch.data.length; i++) {
+      if (excluded.size > 0 && excluded.has(i)) continue;
+      const mean = v.amplitude! * image[i]! + level;
+      sum += cost(patch.data[i]!, mean);
+      visit?.(patch.data[i]!, mean, k, i);
+    }
+    // the pool's own scatter is no function of the parameters but through its mean and variance
+    const pooled = patch.outerCount === 0 ? 0 : patch.outerSum / patch.outerCount;
+    sum += patch.outerCount * cost(pooled, level);
+  }
+  return sum;
+}
