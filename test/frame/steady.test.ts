@@ -51,7 +51,8 @@ describe("the steady course through a quantity", () => {
     const random = createRandom(5);
     const few = times.slice(0, 13);
     const values = few.map(() => 5 + random.normal());
-    const sum = values.reduce((a, v) => a + (v - 5) ** 2, 0);
+    const mean = values.reduce((a, v) => a + v, 0) / 13;
+    const sum = values.reduce((a, v) => a + (v - mean) ** 2, 0);
     // scaled so that χ² is 2.3 times its degrees of freedom, which chance gives less than once in a hundred
     const steady = steadyCourse(
       few,
