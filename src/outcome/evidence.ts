@@ -189,7 +189,7 @@ function scatterOf({ widths, models, frames }: Reading): Sign {
 }
 
 function driftOf({ drift, models, widths }: Reading, from: number, to: number): Sign {
-  const sigma = Math.sqrt(models.variance(widths[0]!.frame)[0]!);
+  const sigma = Math.sqrt(Math.max(models.variance(widths[0]!.frame)[0]!, 1e-12));
   const way = to - from;
   const speed = Math.hypot(...drift.speed);
   return { value: (speed * way) / sigma, u: (Math.max(...drift.u) * way) / sigma };

@@ -109,7 +109,11 @@ export class Rounds {
       law = preferred === "line" ? null : laws[preferred];
       if (settled) break;
     }
-    if (laws === NO_LAWS) laws = fitLaws(widths);
+    // rounds that never came to rest left laws and decay behind the widths
+    if (rounds === MOST_ROUNDS) {
+      laws = fitLaws(widths);
+      decays = this.fitLight();
+    }
     const preferredLaw = preferLaw(laws);
     const { stack, frames, own, scored, models, flags, times, light, drift } = this;
     return {
