@@ -5,7 +5,7 @@ import { firstLook } from "./first-look.ts";
 import type { PatchFit } from "./fit-spot.ts";
 import { fitPatch } from "./fit-spot.ts";
 import type { Parameters } from "./kernel.ts";
-import { isOutlier, tolerance } from "./outliers.ts";
+import { excludeFrom, findGlaring, isOutlier, tolerance } from "./outliers.ts";
 import type { NoiseLaw, Patch, Rectangle } from "./patch.ts";
 import { LAYOUT } from "./pixel-spot.ts";
 import type { Surroundings } from "./surroundings.ts";
@@ -65,12 +65,15 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
       { file: stack.source.file },
     );
   }
+  const background = Math.max(first.parameters[LAYOUT[kind].background]!, 0);
+  const glaring = findGlaring(whole, width, height, sumNoise(noise, after.length), background);
   const widest = widestSpot(
     stack,
     late,
     (after.length - middle) / after.length,
     first,
     sumNoise(noise, after.length - middle),
+    glaring,
   );
   const rectangle = patchAround(kind, first.parameters, widest, REACH * reachFactor, width, height);
 
@@ -83,6 +86,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
     sumNoise(noise, after.length),
   );
 
+  const glaringInside = insideOf(rectangle, glaring, width);
   const patches: Patch[] = [];
   const saturated: boolean[] = [];
   const flat: boolean[] = [];
@@ -91,6 +95,7 @@ export function prepareFrames(stack: Stack, reachFactor = 1): FrameSet {
   for (let index = 0; index < stack.frames; index++) {
     const photons = reader.read(index);
     const patch = cutPatch(photons, width, rectangle);
+    excludeFrom(patch, glaringInside);
     outerOutliers[index] = removeOuterOutliers(photons, width, height, patch, noise);
     patches.push(patch);
     flat.push(isFlat(photons));
@@ -129,6 +134,7 @@ function widestSpot(
   share: number,
   first: PatchFit,
   noise: NoiseLaw,
+  glaring: readonly number[],
 ): [number, number] {
   const { kind, width, height } = stack;
   const start = first.parameters.slice();
@@ -136,7 +142,9 @@ function widestSpot(
   start[LAYOUT[kind].background]! *= share;
   const sigma = sigmas(kind, first.parameters);
   const rectangle = patchAround(kind, first.parameters, sigma, 2 * REACH, width, height);
-  const fit = fitPatch(kind, cutPatch(late, width, rectangle), start, noise);
+  const patch = cutPatch(late, width, rectangle);
+  excludeFrom(patch, insideOf(rectangle, glaring, width));
+  const fit = fitPatch(kind, patch, start, noise);
   if (!fit.converged || fit.parameters[0]! ** 2 < 100 * fit.covariance[0]!) return sigma;
   const lateSigma = sigmas(kind, fit.parameters);
   const shift = (axis: number): number =>
@@ -161,6 +169,18 @@ function patchAround(
 ): Rectangle {
   const ry = kind === "map" ? reach * sigma[1] + 2 : 0;
   return rectangleAround([p[1]!, kind === "map" ? p[2]! : 0], [reach * sigma[0] + 2, ry], width, height);
+}
+
+/** Indices into a rectangle's pixels of those of the picture's that lie in it. */
+function insideOf(
+  { x0, y0, width, height }: Rectangle,
+  indices: readonly number[],
+  columns: number,
+): number[] {
+  return indices.flatMap((index) => {
+    const [x, y] = [(index % columns) - x0, Math.floor(index / columns) - y0];
+    return x >= 0 && x < width && y >= 0 && y < height ? [y * width + x] : [];
+  });
 }
 
 /** Takes hot and struck pixels out of the pool; the pool's own mean says what a pixel should hold. */

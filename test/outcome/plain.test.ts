@@ -163,6 +163,27 @@ describe("what lies off the plain road", () => {
     }
   });
 
+  it.each([
+    ["far from the spot", [10 * 48 + 12]],
+    ["in the spot, two side by side", [24 * 48 + 26, 24 * 48 + 27]],
+  ])("pixels at full scale in every frame of a faint recording cost nothing: %s", (_, places) => {
+    const { stack, truth } = recorded({ recording: { photons: 3000 } });
+    const frames = Array.from({ length: stack.frames }, (_, i) => {
+      const data = new Float64Array(stack.width * stack.height);
+      stack.read(i, data);
+      for (const place of places) data[place] = 65535;
+      return data;
+    });
+    const { width, height, acquisition } = stack;
+    const result = resultOf(memoryStack({ frames, width, height, acquisition }));
+    expect(result.frames.every((frame) => frame.hot_pixels === places.length)).toBe(true);
+    const { diffusion_coefficient: d, lifetime } = result.quantities;
+    expect(Math.abs(pull(d, truth.diffusion_coefficient_cm2_per_s))).toBeLessThan(4);
+    expect(Math.abs(pull(lifetime!, truth.lifetime_ns))).toBeLessThan(4);
+    expect(d.u / resultOf(stack).quantities.diffusion_coefficient.u).toBeCloseTo(1, 1);
+    expect(result.verdict.level).toBe("sound");
+  });
+
   it("an empty frame, all of one number, is flagged and used nowhere", () => {
     const { stack } = recorded();
     const frames = Array.from({ length: stack.frames }, (_, i) => {
