@@ -58,7 +58,7 @@ function cubic(table: Float64Array, u: number): number {
 }
 
 /** Logarithms stop here, relative to the peak. */
-const FLOOR = 1e-13;
+const FLOOR = 1e-11;
 
 /** Logarithms on the quarters x₁x₂ > 0 and x₁x₂ < 0. */
 export type QuarterTables = readonly [same: Float64Array, opposite: Float64Array];
@@ -85,9 +85,11 @@ function logTable(values: Float64Array, first: number, rows: number, columns: nu
   const wide = columns + 1;
   const table = new Float64Array((rows + 1) * wide);
   const floor = FLOOR * values[0]!;
+  const lowest = Math.log(floor);
   for (let p = 0; p < rows; p++) {
     for (let q = 0; q < columns; q++) {
-      table[(p + 1) * wide + q + 1] = Math.log(Math.max(values[first + p * columns + q]!, floor));
+      const value = values[first + p * columns + q]!;
+      table[(p + 1) * wide + q + 1] = value > floor ? Math.log(value) : lowest;
     }
   }
   return table;

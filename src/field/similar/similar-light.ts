@@ -41,10 +41,11 @@ export function resolutionOf(problem: SimilarProblem): Resolution {
   const rates = ratesOf(problem, diffusion);
   const line = new Timeline(rates, endOf(problem));
   const meeting = line.decayed(line.end);
-  const sharp = rates.annihilation / (Math.max(diffusion[1], 0) + 0.05 / meeting);
-  const modes = meeting > 0 ? 14 + 5 * Math.log1p(sharp) : 14;
+  const sharp = rates.annihilation / (Math.max(diffusion[1], 0) + 0.02 / meeting);
+  const flatness = meeting > 0 ? Math.log1p(sharp) : 0;
+  const modes = 14 + 5 * flatness + 6 * Math.max(flatness - 3.5, 0);
   return {
-    modes: Math.min(4 * Math.ceil(modes / 4), 52),
+    modes: Math.min(4 * Math.ceil(modes / 4), 72),
     panels: line.panels,
     radialStep: 0.04,
     planarStep: 0.12,

@@ -27,7 +27,8 @@ const BARYCENTRIC = LOBATTO.map((_, j) => (j % 2 === 0 ? 1 : -1) * (j === 0 || j
  * The times at which the density is known, and how to read it, or what it has left in the traps, at any other time.
  *
  * Spreading slows as 1/s(t), s = 1 + 2dt, and annihilation as 1/(1 + κy), y = ∫e^(−λt)dt, so the clock
- * θ = ½ ln s₁ + ½ ln s₂ + ln(1 + κy) runs evenly with what happens. Panels of equal length on it hold 7
+ * θ = ½ ln s₁ + ½ ln s₂ + ln(1 + κy) runs evenly with what happens. Where spreading is slow, annihilation dies with
+ * the lifetime before spreading takes over: there a share of ln(1 + λt) keeps the clock running. Panels of equal length on it hold 7
  * Chebyshev–Lobatto nodes each; between them v = e^(λt)·n is a polynomial in θ.
  */
 export class Timeline {
@@ -36,12 +37,17 @@ export class Timeline {
   readonly times: readonly number[];
   readonly panels: number;
   readonly #clockStep: number;
+  /** Weight of the clock's last term. */
+  readonly #handover: number;
   /** What has been caught by each panel's beginning, as weights of the nodes. */
   readonly #caught: Float64Array[] = [];
 
   /** @param panels by default as many as accuracy needs */
   constructor(rates: Rates, end: number, panels?: number) {
     this.rates = rates;
+    const [a, b] = rates.diffusion;
+    this.#handover =
+      rates.removal === 0 ? 0 : rates.removal / (rates.removal + 5 * (Math.abs(a) + Math.abs(b)));
     const length = this.clock(end);
     this.panels = panels ?? Math.max(1, Math.ceil(length / PANEL));
     this.#clockStep = length / this.panels;
@@ -67,10 +73,10 @@ export class Timeline {
   /** θ(t). */
   clock(t: number): number {
     const [a, b] = this.scales(t);
-    return (
-      0.5 * (Math.abs(Math.log(a)) + Math.abs(Math.log(b))) +
-      Math.log1p(this.rates.annihilation * this.decayed(t))
-    );
+    const spreading = 0.5 * (Math.abs(Math.log(a)) + Math.abs(Math.log(b)));
+    const { annihilation, removal } = this.rates;
+    if (annihilation === 0) return spreading;
+    return spreading + Math.log1p(annihilation * this.decayed(t)) + this.#handover * Math.log1p(removal * t);
   }
 
   /** s = 1 + 2dt along both axes: the variances without annihilation. */
