@@ -51,6 +51,8 @@ class SeenState {
   readonly #scale: readonly [number, number];
   readonly #even: Float64Array;
   readonly #odd: Float64Array;
+  /** Coefficients below this do not matter. */
+  readonly #enough: number;
 
   constructor(
     basis: LaguerreBasis,
@@ -62,18 +64,20 @@ class SeenState {
     this.#scale = [s[0] + blur[0], s[1] + blur[2]];
     this.#even = damped(coefficients, basis.size, [s[0] / this.#scale[0], s[1] / this.#scale[1]]);
     this.#odd = new Float64Array(coefficients.length);
+    this.#enough = NEGLIGIBLE * Math.abs(this.#even[0]!);
     this.#average(fourth);
     this.#correlate(blur[1]);
   }
 
   even(along: StretchedAxis, across: StretchedAxis): Float64Array {
-    return onGrid(this.#even, this.#basis.size, (used, axis) =>
+    return onGrid(this.#even, this.#basis.size, this.#enough, (used, axis) =>
       evenTable(this.#basis, axis === 0 ? along : across, used, this.#scale[axis]),
     );
   }
 
   odd(along: StretchedAxis, across: StretchedAxis): Float64Array {
-    return onGrid(this.#odd, this.#basis.size, (used, axis) =>
+    const enough = this.#enough * Math.sqrt(this.#scale[0] * this.#scale[1]);
+    return onGrid(this.#odd, this.#basis.size, enough, (used, axis) =>
       oddTable(this.#basis.size, axis === 0 ? along : across, used, this.#scale[axis]),
     );
   }
@@ -93,7 +97,6 @@ class SeenState {
   /** exp(b ∂₁∂₂) as its series. */
   #correlate(b: number): void {
     if (b === 0) return;
-    const enough = NEGLIGIBLE * Math.abs(this.#even[0]!);
     let even: Float64Array = this.#even.slice();
     let odd: Float64Array = this.#odd.slice();
     for (let m = 1; m <= MOST_TERMS; m++) {
@@ -103,7 +106,7 @@ class SeenState {
       [even, odd] = [nextEven, nextOdd];
       addTo(this.#even, even);
       addTo(this.#odd, odd);
-      if (largest(even) + largest(odd) / Math.sqrt(this.#scale[0] * this.#scale[1]) < enough) break;
+      if (largest(even) + largest(odd) / Math.sqrt(this.#scale[0] * this.#scale[1]) < this.#enough) break;
     }
   }
 
@@ -151,9 +154,10 @@ function largest(a: Float64Array): number {
 function onGrid(
   a: Float64Array,
   n: number,
+  enough: number,
   table: (used: number, axis: 0 | 1) => Float64Array,
 ): Float64Array {
-  const [rows, columns] = usedOf(a, n);
+  const [rows, columns] = usedOf(a, n, enough);
   const [first, second] = [table(rows, 0), table(columns, 1)];
   const [points, others] = [first.length / rows, second.length / columns];
   const out = new Float64Array(points * others);
@@ -173,8 +177,7 @@ function onGrid(
   return out;
 }
 
-function usedOf(a: Float64Array, n: number): [rows: number, columns: number] {
-  const enough = NEGLIGIBLE * largest(a);
+function usedOf(a: Float64Array, n: number, enough: number): [rows: number, columns: number] {
   let [rows, columns] = [1, 1];
   for (let k = 0; k < n; k++) {
     for (let l = 0; l < n; l++) {

@@ -7,7 +7,7 @@ import { StretchedAxis } from "./stretched-axis.ts";
 /** Up to where a profile is followed, in standard deviations. */
 export const REACH = 6.7;
 /** Coefficients below this share of the first are left out. */
-export const NEGLIGIBLE = 1e-11;
+export const NEGLIGIBLE = 1e-9;
 
 /** Light v of each of a flow's states on points that do not move, so that states can be added. */
 export interface Screen {

@@ -68,13 +68,13 @@ export function similarLight(problem: SimilarProblem, resolution?: Resolution): 
     throw new RangeError("Excitons that never end pile up over the pulses: give a lifetime or no period.");
   }
   const frame = whitened(problem);
-  const flow = flowFor(problem, frame, resolution ?? resolutionOf(problem));
+  const steps = resolution ?? resolutionOf(problem);
+  const flow = flowFor(problem, frame, steps);
   // rates of change do not depend on the unit: a peak of 1 after a pulse
-  const medium: Medium = { ...problem, annihilation, capture };
+  const medium: Medium = { ...problem, annihilation };
   const start: Start = { amount: 2 * Math.PI * frame.area, covariance: problem.start };
   const list = exposures(problem, changeRate(medium, start));
   const weights = frameWeights(flow.timeline, list, problem.delays.length, period);
-  const steps = resolution ?? resolutionOf(problem);
   if (problem.kind === "trace") return stripLight(problem, frame, flow, weights, steps);
   return frame.round
     ? roundLight(problem, frame, flow, weights, steps)
@@ -109,9 +109,20 @@ function endOf({ delays, gate, period, lifetime, capture, responseSigma }: Simil
   return period === null ? last : Math.max(Math.min(last, period), memory(1 / lifetime + capture));
 }
 
-function reachOf(flow: Flow, { blur }: Optics): [number, number] {
-  const end = flow.timeline.scales(flow.timeline.end);
-  return [REACH * Math.sqrt(Math.max(end[0], 1) + blur[0]), REACH * Math.sqrt(Math.max(end[1], 1) + blur[2])];
+/**
+ * Where even the widest light of weight has fallen below 2e-10 of the peak. What is left of earlier pulses is wide but
+ * weak: at the age t its e^(−γ(t − last)), γ the slowest rate of decay, is taken off.
+ */
+function reachOf({ timeline }: Flow, { blur }: Optics, { delays, gate }: SimilarProblem): [number, number] {
+  const { removal, capture, trapRate } = timeline.rates;
+  const rate = capture > 0 ? Math.min(removal, trapRate) : removal;
+  const last = Math.max(0, ...delays) + gate;
+  const square = (axis: 0 | 1) =>
+    timeline.times.map((t) => {
+      const exponent = Math.max(REACH ** 2 - 2 * rate * Math.max(t - last, 0), 0);
+      return exponent * (timeline.scales(t)[axis] + blur[axis === 0 ? 0 : 2]);
+    });
+  return [Math.sqrt(Math.max(...square(0))), Math.sqrt(Math.max(...square(1)))];
 }
 
 /** Amounts and shares from each state's own amount; a frame's profile is made when it is first asked for. */
@@ -145,7 +156,7 @@ function roundLight(
   { radialStep }: Resolution,
 ): SimilarLight {
   const optics = opticsOf(problem, frame);
-  const { radius, values } = roundScreen(flow, optics, reachOf(flow, optics)[0], radialStep);
+  const { radius, values } = roundScreen(flow, optics, reachOf(flow, optics, problem)[0], radialStep);
   const width = Math.sqrt(frame.area);
   return collected(problem, shares(flow), weights, (light) => {
     const profile = profileOf(values, light, 1 / (2 * Math.PI * frame.area));
@@ -161,7 +172,7 @@ function planarLight(
   { planarStep }: Resolution,
 ): SimilarLight {
   const optics = opticsOf(problem, frame);
-  const { axes, values, quarters } = planarScreen(flow, optics, reachOf(flow, optics), planarStep);
+  const { axes, values, quarters } = planarScreen(flow, optics, reachOf(flow, optics, problem), planarStep);
   return collected(problem, shares(flow), weights, (light) => {
     const profile = profileOf(values, light, 1);
     if (!(profile[0]! > 0)) return (_, grid, out) => void out.fill(0, 0, grid.width * grid.height);
@@ -181,7 +192,7 @@ function stripLight(
   const optics = opticsOf(problem, frame);
   const width = Math.sqrt(frame.area);
   const strip = { slit: (problem.slit ?? Infinity) / width, pixel: problem.pixel / width };
-  const { radius, values } = stripScreen(flow, optics, reachOf(flow, optics)[0], radialStep, strip);
+  const { radius, values } = stripScreen(flow, optics, reachOf(flow, optics, problem)[0], radialStep, strip);
   // trapezoids over the whole line; the integrand is even and dies out
   const measure = Float64Array.from(
     { length: radius.count },
