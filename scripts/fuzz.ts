@@ -54,7 +54,7 @@ function complaint({ code, out, err }: Run): string | null {
   if (![0, 2, 3].includes(code)) return `exit code ${code}`;
   if (/^\s+at .*:\d+/m.test(err)) return "shows a stack trace";
   // "(NaN)" says what a pixel is, "key = NaN" repeats what the user wrote
-  const own = (out + err).replace(/\(NaN\)|= -?(NaN|Infinity)\b/g, "");
+  const own = (out + err).replace(/\(NaN\)|= "?-?(NaN|Infinity)\b/g, "");
   if (/\bNaN\b|\bInfinity\b|undefined/.test(own)) return "shows a number that is none";
   if (code !== 2) return err === "" ? null : "says something on stderr though it went on";
   if (out !== "") return "prints a result though it refused";

@@ -7,6 +7,10 @@ import { KINDS } from "./units.ts";
 
 type QuantityRule = Extract<KeyRule, { form: "quantity" }>;
 
+/** Far beyond any measurement in µm, ns, K, meV or counts, and far from where products of them overflow. */
+const LARGEST = 1e15;
+const SMALLEST = 1e-15;
+
 /** A quantity in internal units, or null where the key is not written. */
 export function quantityOf(settings: WrittenSettings, key: string): Measured | null {
   const setting = settings.values.get(key);
@@ -36,6 +40,10 @@ function checked(settings: WrittenSettings, key: string, rule: QuantityRule, mea
   if (range === "positive" && value <= 0) throw valueFault(settings, key, "is not above zero");
   if (range === "not-negative" && value < 0) throw valueFault(settings, key, "is below zero");
   if (range === "at-least-1" && value < 1) throw valueFault(settings, key, "is below 1");
+  if (Math.abs(value) > LARGEST) throw valueFault(settings, key, "is too large to be meant");
+  if (value !== 0 && Math.abs(value) < SMALLEST) throw valueFault(settings, key, "is too small to be meant");
+  if (rule.kind === "fraction" && value > 1) throw valueFault(settings, key, "is above 100 %");
+  if (u > Math.abs(value)) throw valueFault(settings, key, "has an uncertainty larger than itself");
   if (u > 0 && rule.uncertain !== true && key !== "time.step") {
     throw valueFault(settings, key, "carries an uncertainty, which is not used there");
   }
@@ -70,6 +78,9 @@ export function numbersOf(settings: WrittenSettings, key: string): number[] | nu
         key,
         `holds ${JSON.stringify(String(each).trim())} in place ${i + 1}, which is not a number`,
       );
+    }
+    if (Math.abs(number) > LARGEST) {
+      throw valueFault(settings, key, `holds ${number} in place ${i + 1}, which is too large to be meant`);
     }
     return number;
   });
