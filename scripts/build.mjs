@@ -28,15 +28,15 @@ function library() {
 async function commandLine() {
   await rm(join(out, "cli"), { recursive: true, force: true });
   await build({
-    entryPoints: { main: "src/cli/main.ts" },
+    // the drawing thread is started by its file's name beside the command line's
+    entryPoints: { main: "src/cli/main.ts", "figure-worker": "src/report/figure-worker.ts" },
     outdir: join(out, "cli"),
     bundle: true,
     splitting: true,
     platform: "node",
     format: "esm",
     target: "node20",
-    minifySyntax: true,
-    minifyWhitespace: true,
+    minify: true,
     legalComments: "linked",
     logLevel: "warning",
     // some bundled packages still call require() for Node's own modules

@@ -1,5 +1,6 @@
 import { analyse } from "../outcome/analyse.ts";
 import type { Analysis, AnalysisOptions } from "../outcome/analysis.ts";
+import { hireArtist } from "../report/draw-aside.ts";
 import { renderTerminal } from "../report/terminal.ts";
 import { writeReports } from "../report/write.ts";
 import { discardUnfinished } from "../report/write-whole.ts";
@@ -28,10 +29,20 @@ export async function spread(file: string, options: SpreadOptions): Promise<Exit
   const folder = options.output ?? `${withoutEnding(file)}.gleamwalk`;
   await checkFolder(folder, "-o");
 
-  const stack = await openStack(file, openOptions(options));
-  const analysis = analyseWatched(stack, wanted, options.quiet === true ? null : process.stderr);
-  await writing(folder, "-o", () => uninterrupted(() => writeReports(analysis, folder), discardUnfinished));
+  const artist = hireArtist();
+  try {
+    const stack = await openStack(file, openOptions(options));
+    const analysis = analyseWatched(stack, wanted, options.quiet === true ? null : process.stderr);
+    await writing(folder, "-o", () =>
+      uninterrupted(() => writeReports(analysis, folder, artist.draw), discardUnfinished),
+    );
+    return report(analysis, folder, options);
+  } finally {
+    artist.end();
+  }
+}
 
+function report(analysis: Analysis, folder: string, options: SpreadOptions): ExitCode {
   if (options.json === true) process.stdout.write(`${JSON.stringify(analysis.result, null, 2)}\n`);
   else if (options.quiet !== true) process.stdout.write(summary(analysis, folder));
   return analysis.result.verdict.level === "unsound" ? ExitCode.unsound : ExitCode.done;

@@ -44,7 +44,7 @@ export function sumFrames(reader: PhotonReader, indices: readonly number[]): Flo
 }
 
 /** Cuts a rectangle out of a picture of `width` columns and pools the rest. */
-export function cutPatch(photons: ArrayLike<number>, width: number, rectangle: Rectangle): Patch {
+export function cutPatch(photons: Float64Array, width: number, rectangle: Rectangle): Patch {
   const { x0, y0 } = rectangle;
   const data = new Float32Array(rectangle.width * rectangle.height);
   let all = 0;

@@ -1,4 +1,4 @@
-import { cutPatch } from "./cut.ts";
+import { cutPatch, rectangleAround } from "./cut.ts";
 import type { PatchFit } from "./fit-spot.ts";
 import { fitPatch } from "./fit-spot.ts";
 import type { Parameters } from "./kernel.ts";
@@ -30,13 +30,16 @@ export function firstLook(
   const peak = smooth[top]! - background;
   if (!(peak > 0)) return null;
   const variance = varianceFromHalfArea(kind, smooth, background + peak / 2);
-  const patch = cutPatch(picture, width, { x0: 0, y0: 0, width, height });
+  const [x, y] = [top % width, Math.floor(top / width)];
+  const reach = 8 * Math.sqrt(variance) + 8;
+  const rectangle = rectangleAround([x, y], [reach, kind === "map" ? reach : 0], width, height);
+  const patch = cutPatch(picture, width, rectangle);
+  const calmPatch = cutPatch(smooth, width, rectangle).data;
   excludeFrom(
     patch,
-    findOutliers(picture, width, height, noise, (i) => smooth[i]!),
+    findOutliers(patch.data, rectangle.width, rectangle.height, noise, (i) => calmPatch[i]!),
   );
 
-  const [x, y] = [top % width, Math.floor(top / width)];
   for (const factor of [1, 0.3, 3]) {
     const fit = fitPatch(kind, patch, startAt(kind, x, y, variance * factor, peak, background), noise);
     if (fit.converged && fit.parameters[0]! ** 2 > 25 * fit.covariance[0]!) return fit;

@@ -143,7 +143,7 @@ function accumulate(
   residualMoments.fill(0);
   linearMoments.fill(0);
   squareMoments.fill(0);
-  pearson = 0;
+  let squares = 0;
   const stride = Math.exp(-pxx);
 
   for (let j = 0; j < height; j++) {
@@ -184,7 +184,7 @@ function accumulate(
         const w = 1 / variance;
         const residual = data[offset + i]! - mean;
         const rho = residual * w;
-        pearson += residual * rho;
+        squares += residual * rho;
         const rg = rho * g;
         const rgx = rg * dx;
         rAll += rho;
@@ -228,6 +228,8 @@ function accumulate(
     linearMoments[6]! += lAll;
     addSquares(q0, q1, q2, q3, q4, dy, dy2);
   }
+  // one write to the module's variable: a number written there pixel by pixel is a new object every time
+  pearson = squares;
   for (const index of patch.excluded)
     subtractPixel(patch, index, peak, cx, cy, pxx, pxy, pyy, background, noise);
 }

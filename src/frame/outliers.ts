@@ -69,7 +69,7 @@ export function findGlaring(
   });
 }
 
-const neighbours: number[] = [];
+const neighbours = new Float64Array(8);
 
 /** Median of a pixel's eight neighbours, fewer at the border. */
 export function medianAround(
@@ -80,18 +80,19 @@ export function medianAround(
 ): number {
   const x = index % width;
   const y = (index - x) / width;
-  neighbours.length = 0;
+  let count = 0;
   for (let j = Math.max(0, y - 1); j <= Math.min(height - 1, y + 1); j++) {
     for (let i = Math.max(0, x - 1); i <= Math.min(width - 1, x + 1); i++) {
-      const at = j * width + i;
-      if (at !== index) neighbours.push(photons[at]!);
+      if (i === x && j === y) continue;
+      // sorted as they come: eight numbers are too few to sort any other way
+      const value = photons[j * width + i]!;
+      let at = count++;
+      for (; at > 0 && neighbours[at - 1]! > value; at--) neighbours[at] = neighbours[at - 1]!;
+      neighbours[at] = value;
     }
   }
-  neighbours.sort((a, b) => a - b);
-  const middle = neighbours.length >> 1;
-  return neighbours.length % 2 === 1
-    ? neighbours[middle]!
-    : (neighbours[middle - 1]! + neighbours[middle]!) / 2;
+  const middle = count >> 1;
+  return count % 2 === 1 ? neighbours[middle]! : (neighbours[middle - 1]! + neighbours[middle]!) / 2;
 }
 
 /** Takes outliers of a patch out of the fit. */

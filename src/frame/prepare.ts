@@ -32,7 +32,7 @@ export interface FrameSet {
 }
 
 /** How far the patch reaches from the spot, in standard deviations of its widest frame. */
-const REACH = 5;
+const REACH = 4.5;
 
 /**
  * Finds the spot in the sum of all frames after the pulse, cuts every frame around it and pools the rest.

@@ -10,7 +10,9 @@ export function meanAt(kind: "map" | "trace", patch: Patch, p: Parameters, index
   if (kind === "trace")
     return (p[0]! / Math.sqrt(2 * Math.PI * p[2]!)) * Math.exp((-0.5 * dx * dx) / p[2]!) + p[3]!;
   const dy = y0 + Math.floor(index / width) - p[2]!;
-  const [xx, xy, yy] = [p[3]!, p[4]!, p[5]!];
+  const xx = p[3]!;
+  const xy = p[4]!;
+  const yy = p[5]!;
   const determinant = xx * yy - xy * xy;
   const q = (yy * dx * dx - 2 * xy * dx * dy + xx * dy * dy) / determinant;
   return (p[0]! / (2 * Math.PI * Math.sqrt(determinant))) * Math.exp(-0.5 * q) + p[6]!;
@@ -36,7 +38,9 @@ export function findStrikes(kind: "map" | "trace", patch: Patch, p: Parameters, 
       const below = y < height - 1 ? data[i + width]! : y > 0 ? data[i - width]! : right;
       const across = (left + right) / 2;
       const along = (above + below) / 2;
-      const gap2 = Math.max((value - across) ** 2, (value - along) ** 2);
+      const gapAcross = value - across;
+      const gapAlong = value - along;
+      const gap2 = Math.max(gapAcross * gapAcross, gapAlong * gapAlong);
       // a quarter of (5.5 s.d. + 5 photons)² is at least 7.5 variances and 6 photons² at the smaller neighbourhood
       const least = Math.min(across, along);
       if (gap2 < 7.5 * pixelVariance(noise, Math.min(least, value)) + 6) continue;

@@ -7,7 +7,7 @@ import type { Reading } from "./reading.ts";
 import { Rounds } from "./rounds.ts";
 
 /** The spot must keep this many standard deviations of clearance inside its patch. */
-const CLEARANCE = 4.5;
+const CLEARANCE = 4;
 
 /**
  * Reads a recording: spots, widths, light, laws. Where the fitted spot outgrows its patch, the patch is cut wider and

@@ -212,7 +212,8 @@ export class Rounds {
       const scored = this.scored[i] ?? null;
       const reference = referenceAt(this.frames, this.models, i);
       const bright = scored !== null && this.expectedLight[i]! > BRIGHT * Math.sqrt(scored.light.variance);
-      let fit = bright ? fitPatch(kind, patch, reference, noise) : null;
+      const start = scored !== null && isSpot(kind, scored.estimate, reference) ? scored.estimate : reference;
+      let fit = bright ? fitPatch(kind, patch, start, noise) : null;
       for (let attempt = 0; attempt < 2; attempt++) {
         const strikes = findStrikes(kind, patch, fit?.converged ? fit.parameters : reference, noise);
         const before = patch.excluded.length;
@@ -357,6 +358,14 @@ function firstFlags(
   const slack = 1e-9 * (Math.abs(delay) + gate);
   if (delay >= 0 && (delay < from - slack || delay > to + slack)) flags.push("outside-window");
   return flags;
+}
+
+/** Whether one step from the reference has come to a spot worth starting from: bright, and of a width like its own. */
+function isSpot(kind: "map" | "trace", p: Float64Array, reference: Float64Array): boolean {
+  const { photons, variance } = LAYOUT[kind];
+  const alike = (at: number): boolean => p[at]! > 0.4 * reference[at]! && p[at]! < 2.5 * reference[at]!;
+  if (!alike(photons) || !alike(variance[0])) return false;
+  return kind === "trace" || (alike(5) && p[4]! ** 2 < 0.5 * p[3]! * p[5]!);
 }
 
 /** Light over its standard deviation that a mean over frames must reach before it may stand for one of them. */

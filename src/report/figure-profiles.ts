@@ -79,12 +79,13 @@ export function profileFigure(drawing: Drawing, analysis: Analysis): string {
   });
 }
 
-interface Chosen {
+export interface Chosen {
   readonly row: FrameRow;
   readonly spot: Spot;
 }
 
-function chosenFrames(analysis: Analysis): Chosen[] {
+/** The first, the middle and the last frame used, with their fits. */
+export function chosenFrames(analysis: Pick<Analysis, "result" | "spots">): Chosen[] {
   const fitted = analysis.result.frames.flatMap((row): Chosen[] => {
     const spot = analysis.spots[row.index] ?? null;
     return spot === null ? [] : [{ row, spot }];

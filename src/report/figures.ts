@@ -11,14 +11,19 @@ export interface Figures {
   readonly profiles: string;
 }
 
-/**
- * Draws the figures in Node. The plotting library and the stand-in for a page's document are loaded here and only
- * here, as they take longer to load than the figures take to draw.
- */
+/** Draws the figures in Node. */
 export async function renderFigures(analysis: Analysis): Promise<Figures> {
+  return drawFigures(await loadDrawing(), analysis);
+}
+
+/**
+ * The plotting library and the stand-in for a page's document, loaded here and only here: they take longer to load than
+ * the figures take to draw.
+ */
+export async function loadDrawing(): Promise<Drawing> {
   const [plot, { parseHTML }] = await Promise.all([import("@observablehq/plot"), import("linkedom")]);
   const { document } = parseHTML("<!doctype html><html><body></body></html>");
-  return drawFigures({ plot, document }, analysis);
+  return { plot, document };
 }
 
 /** Draws the figures with a document at hand: a page's own, or Node's stand-in. */

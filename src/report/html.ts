@@ -15,7 +15,7 @@ import {
 } from "./page-tables.ts";
 import { viewerHtml } from "./page-viewer.ts";
 import { decayText, spreadText } from "./terminal.ts";
-import type { Pack } from "./viewer-data.ts";
+import type { Viewer } from "./viewer-data.ts";
 import {
   asSentence,
   baseName,
@@ -36,16 +36,16 @@ const POLICY =
 /**
  * The report: one self-contained HTML file. It opens with the verdict and the four numbers, then shows the evidence,
  * then everything that is needed to repeat the work.
- * @param pack deflates the frames that the viewer shows, and writes them as base64
+ * @param viewer the frames that the viewer shows, packed
  */
-export function renderReport(analysis: Analysis, figures: Figures, pack: Pack): string {
+export function renderReport(analysis: Analysis, figures: Figures, viewer: Viewer): string {
   const { result } = analysis;
   const body = [
     top(result),
     `<main id="main">`,
     verdictSection(result),
     spreadAndLight(result, figures),
-    viewerHtml(analysis, pack, figures.profiles),
+    viewerHtml(viewer, figures.profiles),
     ruled("How sure", [
       `<p>Standard uncertainties (k = 1). Type A comes from counting statistics through the fits, type B from what is known about pixel size, time base and temperature.</p>`,
       ...budgetTables(result),

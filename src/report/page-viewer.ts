@@ -1,13 +1,11 @@
-import type { Analysis } from "../outcome/analysis.ts";
 import { colourRamps } from "./viewer-colours.ts";
-import { type Pack, type ViewerData, viewerData } from "./viewer-data.ts";
+import type { Viewer, ViewerData } from "./viewer-data.ts";
 import { modelCells, residualCells } from "./viewer-model.ts";
 import { frameViewer } from "./viewer-script.ts";
 import { counted } from "./wording.ts";
 
 /** The frame viewer's part of the page: a static figure of three cuts, and the viewer itself where scripts run. */
-export function viewerHtml(analysis: Analysis, pack: Pack, profiles: string): string {
-  const { data, cells } = viewerData(analysis, pack);
+export function viewerHtml({ data, cells }: Viewer, profiles: string): string {
   return `<section aria-labelledby="frames" class="${data.kind}">
 <h2 id="frames">Frame by frame</h2>
 <noscript><p>The frame viewer needs scripts; the cuts below and the table of frames show the same data.</p></noscript>

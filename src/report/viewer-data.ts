@@ -37,6 +37,13 @@ export interface ViewerFrame {
   readonly numbers: readonly (readonly [label: string, text: string])[];
 }
 
+/** Everything that the viewer's part of the page holds. */
+export interface Viewer {
+  readonly data: ViewerData;
+  /** The frames' cells, packed. */
+  readonly cells: string;
+}
+
 /** Cells in the whole page at most; at 4 to 6 bits a cell this keeps the report well under 2 MB. */
 const MOST_CELLS = 800_000;
 const MOST_SIDE = 64;
@@ -44,7 +51,7 @@ const LEAST_SIDE = 32;
 const MOST_TRACE_CELLS = 160;
 
 /** Packs the frames for the page: cropped to the spot, cells added up, quantised to a quarter of their noise. */
-export function viewerData(analysis: Analysis, pack: Pack): { data: ViewerData; cells: string } {
+export function viewerData(analysis: Analysis, pack: Pack): Viewer {
   const { stack, spots, result } = analysis;
   const side = Math.min(MOST_SIDE, Math.max(LEAST_SIDE, Math.floor(Math.sqrt(MOST_CELLS / stack.frames))));
   const region = regionOf(stack, spots, stack.kind === "trace" ? MOST_TRACE_CELLS : side);

@@ -5,12 +5,12 @@ import type { Analysis } from "../../src/outcome/analysis.ts";
 import { renderFigures } from "../../src/report/figures.ts";
 import { renderReport } from "../../src/report/html.ts";
 import { methodsText } from "../../src/report/methods.ts";
+import { viewerData } from "../../src/report/viewer-data.ts";
 import { makeAnalysis } from "./fixture.ts";
 
 async function report(analysis: Analysis): Promise<string> {
-  return renderReport(analysis, await renderFigures(analysis), (bytes) =>
-    deflateSync(bytes).toString("base64"),
-  );
+  const viewer = viewerData(analysis, (bytes) => deflateSync(bytes).toString("base64"));
+  return renderReport(analysis, await renderFigures(analysis), viewer);
 }
 
 const good = makeAnalysis("good");
