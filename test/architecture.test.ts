@@ -29,6 +29,8 @@ const SHELL = [
   /^stack\/open[\w-]*\.ts$/,
   /^stack\/[\w/-]*file[\w-]*\.ts$/,
   /^report\/write[\w-]*\.ts$/,
+  // the thread that draws figures beside the page that is being written
+  /^report\/(draw-aside|figure-worker)\.ts$/,
 ];
 
 interface Import {

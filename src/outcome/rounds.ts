@@ -23,8 +23,9 @@ import type { LineFit } from "../transport/line.ts";
 import { fitLine, meanDiffusion } from "../transport/line.ts";
 import type { Width } from "../transport/width.ts";
 import type { AnalysisOptions } from "./analysis.ts";
+import { firstFlags } from "./first-flags.ts";
 import type { Drift, LightSeries, Reading } from "./reading.ts";
-import { responseEnd } from "./response-end.ts";
+import { runningMean } from "./running-mean.ts";
 import { transmission } from "./transmission.ts";
 
 /** Expected light over its standard deviation from which a frame takes part in the law of spread. */
@@ -341,56 +342,10 @@ export class Rounds {
   }
 }
 
-function firstFlags(
-  delay: number,
-  i: number,
-  stack: Stack,
-  frames: FrameSet,
-  options: AnalysisOptions,
-): FrameFlag[] {
-  const { gate } = stack.acquisition.time;
-  const flags: FrameFlag[] = [];
-  if (delay < 0) flags.push("before-pulse");
-  if (frames.empty[i]) flags.push("empty");
-  if (frames.saturated[i]) flags.push("saturated");
-  const from = options.from ?? responseEnd(stack.acquisition.response);
-  const to = options.to ?? Number.POSITIVE_INFINITY;
-  const slack = 1e-9 * (Math.abs(delay) + gate);
-  if (delay >= 0 && (delay < from - slack || delay > to + slack)) flags.push("outside-window");
-  return flags;
-}
-
 /** Whether one step from the reference has come to a spot worth starting from: bright, and of a width like its own. */
 function isSpot(kind: "map" | "trace", p: Float64Array, reference: Float64Array): boolean {
   const { photons, variance } = LAYOUT[kind];
   const alike = (at: number): boolean => p[at]! > 0.4 * reference[at]! && p[at]! < 2.5 * reference[at]!;
   if (!alike(photons) || !alike(variance[0])) return false;
   return kind === "trace" || (alike(5) && p[4]! ** 2 < 0.5 * p[3]! * p[5]!);
-}
-
-/** Light over its standard deviation that a mean over frames must reach before it may stand for one of them. */
-const TELLING = 10;
-
-/**
- * Mean over each frame and its neighbours, the frame itself counted twice; over so many neighbours that the frame's own
- * fluctuation is small in it, since the weights of what is read next come from it.
- */
-function runningMean(values: Float64Array, sigma: Float64Array): Float64Array {
-  return values.map((value, i) => {
-    const own = Number.isFinite(value) ? 2 : 0;
-    let sum = own > 0 ? own * value : 0;
-    let weights = own;
-    let variance = own > 0 ? (own * sigma[i]!) ** 2 : 0;
-    for (let reach = 1; reach < values.length; reach++) {
-      for (const j of [i - reach, i + reach]) {
-        const neighbour = values[j];
-        if (neighbour === undefined || !Number.isFinite(neighbour)) continue;
-        sum += neighbour;
-        weights++;
-        variance += sigma[j]! ** 2;
-      }
-      if (weights > 0 && sum > TELLING * Math.sqrt(variance)) break;
-    }
-    return weights > 0 ? sum / weights : value;
-  });
 }

@@ -195,7 +195,7 @@ function leftOver({ evidence, reading, joint }: Case): number {
 }
 
 /** Old excitons under the new ones: a broad foot, which the width of one Gaussian cannot tell from traps. */
-const HARMFUL_GLOW = 0.02;
+const HARMFUL_GLOW = 0.005;
 
 function glow(seen: Case): Reason | null {
   const share = leftOver(seen);
@@ -244,15 +244,33 @@ function background({ evidence }: Case): Reason | null {
   );
 }
 
-function noise({ evidence }: Case): Reason | null {
-  const { value, u } = evidence.scatter;
+function noise(seen: Case): Reason | null {
+  const { value, u } = seen.evidence.scatter;
   const off = Math.abs(value - 1);
   if (off < 0.1 || off < SURE * u) return null;
+  // light that no spot accounts for scatters too: then the detector is not to blame, or not surely
+  const otherwise = bends(seen) || leftOver(seen) > HARMFUL_GLOW || seen.evidence.background.p < 1e-5;
+  if (otherwise && off < 1) return null;
   return reason(
-    off > 0.5 ? "unsound" : "caution",
+    off > 0.5 && !otherwise ? "unsound" : "caution",
     "noise-not-as-stated",
     `pixels scatter ${value.toPrecision(3)} times the variance that the detector settings give`,
     "check gain, offset, read_noise and excess_noise in [detector]; every uncertainty rests on them",
+  );
+}
+
+/** The brightest frame's light over its standard deviation, below which intervals are only approximate. */
+const FAINT = 10;
+
+function faint({ reading }: Case): Reason | null {
+  const { light, widths } = reading;
+  const brightest = Math.max(...widths.map(({ frame }) => light.value[frame]! / light.sigma[frame]!));
+  if (brightest >= FAINT) return null;
+  return reason(
+    "caution",
+    "hardly-any-light",
+    `the brightest frame's light is ${brightest.toFixed(1)} of its standard deviations; at so little light the intervals, that of the lifetime above all, are too narrow`,
+    "collect more light, or add neighbouring frames up before the analysis",
   );
 }
 
@@ -320,6 +338,7 @@ const JUDGES: readonly ((seen: Case) => Reason | readonly Reason[] | null)[] = [
   annihilationOrTraps,
   noMotion,
   noise,
+  faint,
   failed,
   setAside,
   cutOff,
