@@ -74,6 +74,8 @@ function spreadCommand(program: Command): Command {
       'first delay of the law of spread, such as "1 ns" or "500 ps"; a bare number is ns',
     )
     .option("--to <TIME>", "last delay of the law of spread")
+    .option("--field", "fit the whole stack at once even where nothing speaks against the widths")
+    .option("--no-field", "never fit the whole stack at once")
     .option("--seed <N>", "seed of the Monte Carlo intervals");
   return addSettingOptions(command)
     .option("--json", "print the result as JSON to stdout and nothing else there")

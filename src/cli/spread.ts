@@ -17,6 +17,7 @@ export interface SpreadOptions extends SettingOptions {
   readonly output?: string;
   readonly from?: string;
   readonly to?: string;
+  readonly field?: boolean;
   readonly seed?: string;
   readonly json?: boolean;
   readonly quiet?: boolean;
@@ -25,7 +26,12 @@ export interface SpreadOptions extends SettingOptions {
 /** `gleamwalk spread`: one recording to D, τ, L and μ, with files to keep and a summary to read. */
 export async function spread(file: string, options: SpreadOptions): Promise<ExitCode> {
   const seed = seedFrom(options.seed);
-  const wanted = { ...windowFrom(options.from, options.to), ...(seed === undefined ? {} : { seed }) };
+  const field = options.field === undefined ? "auto" : options.field ? "always" : "never";
+  const wanted = {
+    ...windowFrom(options.from, options.to),
+    field,
+    ...(seed === undefined ? {} : { seed }),
+  } as const;
   const folder = options.output ?? `${withoutEnding(file)}.gleamwalk`;
   await checkFolder(folder, "-o");
 

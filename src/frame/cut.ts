@@ -47,19 +47,20 @@ export function sumFrames(reader: PhotonReader, indices: readonly number[]): Flo
 export function cutPatch(photons: Float64Array, width: number, rectangle: Rectangle): Patch {
   const { x0, y0 } = rectangle;
   const data = new Float32Array(rectangle.width * rectangle.height);
-  let all = 0;
-  for (let i = 0; i < photons.length; i++) all += photons[i]!;
-  let inside = 0;
-  for (let j = 0; j < rectangle.height; j++) {
-    const from = (y0 + j) * width + x0;
-    const to = j * rectangle.width;
-    for (let i = 0; i < rectangle.width; i++) {
-      const value = photons[from + i]!;
-      data[to + i] = value;
-      inside += value;
+  const right = x0 + rectangle.width;
+  const bottom = y0 + rectangle.height;
+  let outerSum = 0;
+  let at = 0;
+  for (let y = 0, row = 0; row < photons.length; y++, row += width) {
+    if (y < y0 || y >= bottom) {
+      for (let i = row; i < row + width; i++) outerSum += photons[i]!;
+      continue;
     }
+    for (let i = row; i < row + x0; i++) outerSum += photons[i]!;
+    for (let i = row + x0; i < row + right; i++) data[at++] = photons[i]!;
+    for (let i = row + right; i < row + width; i++) outerSum += photons[i]!;
   }
-  return { rectangle, data, outerCount: photons.length - data.length, outerSum: all - inside, excluded: [] };
+  return { rectangle, data, outerCount: photons.length - data.length, outerSum, excluded: [] };
 }
 
 /** A rectangle around a centre, clipped to the picture; pixels. */

@@ -6,15 +6,19 @@ import { version } from "../version.ts";
 import type { Analysis, AnalysisOptions, CurvePoint } from "./analysis.ts";
 import { densityOf } from "./density.ts";
 import { gatherEvidence } from "./evidence.ts";
+import { fieldBlock } from "./field-block.ts";
+import { fieldQuantities } from "./field-quantities.ts";
+import { isAdopted, isMisled, judgeField } from "./field-verdict.ts";
 import type { Joint } from "./joint.ts";
 import { joinFits, quadratic } from "./joint.ts";
-import { quantitiesOf } from "./quantities.ts";
+import { type Quantities, quantitiesOf, quantitiesOfField } from "./quantities.ts";
 import { readRecording } from "./read-recording.ts";
 import type { Reading } from "./reading.ts";
 import type { DecayLaw, Law, Result } from "./result.ts";
 import { frameRows, spotsOf } from "./rows.ts";
 import { tensorOf } from "./tensor.ts";
 import { judge } from "./verdict.ts";
+import { fitWholeStack } from "./whole-stack.ts";
 
 const DEFAULT_SEED = 1;
 
@@ -28,8 +32,10 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
   const reading = readRecording(stack, options);
   const joint = joinFits(reading);
   const evidence = gatherEvidence(reading);
-  const outcome = quantitiesOf(reading, joint, options.seed ?? DEFAULT_SEED);
-  const verdict = judge({ reading, joint, evidence, quantities: outcome });
+  const seed = options.seed ?? DEFAULT_SEED;
+  const widths = quantitiesOf(reading, joint, seed);
+  const plain = judge({ reading, joint, evidence, quantities: widths });
+  const { outcome, verdict, field } = withField(reading, joint, widths, plain, options, seed);
   const { acquisition } = stack;
   const window = reading.widths.map((width) => acquisition.time.delays[width.frame]!);
   const { file, sha256, shape, axes } = stack.source;
@@ -56,7 +62,7 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
     },
     decay: decayBlock(reading, joint),
     density: densityOf(acquisition, outcome.quantities.mobility),
-    field: null,
+    field,
     budget: outcome.budget,
     frames: frameRows(reading),
     provenance: {
@@ -76,8 +82,32 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
   };
 }
 
-function optionsUsed({ from, to, seed }: AnalysisOptions): Record<string, number> {
+/** The whole-stack fit where it pays: its block, and what it changes in quantities and verdict. */
+function withField(
+  reading: Reading,
+  joint: Joint,
+  widths: Quantities,
+  plain: Result["verdict"],
+  options: AnalysisOptions,
+  seed: number,
+): { outcome: Quantities; verdict: Result["verdict"]; field: Result["field"] } {
+  const { field: wish = "auto" } = options;
+  const pays = wish === "always" || (wish === "auto" && isMisled(plain));
+  const whole = pays ? fitWholeStack(reading, joint) : null;
+  if (whole === null) return { outcome: widths, verdict: plain, field: null };
+  const field = fieldQuantities(whole.data, whole.fits);
+  const adopted = isAdopted(plain, whole);
+  const { acquisition } = reading.stack;
   return {
+    outcome: adopted ? quantitiesOfField(field, acquisition, seed) : widths,
+    verdict: judgeField(plain, whole, field, widths),
+    field: fieldBlock(whole, field, acquisition, adopted),
+  };
+}
+
+function optionsUsed({ from, to, seed, field }: AnalysisOptions): Record<string, number | string> {
+  return {
+    field: field ?? "auto",
     seed: seed ?? DEFAULT_SEED,
     ...(from === undefined ? {} : { from_ns: from }),
     ...(to === undefined ? {} : { to_ns: to }),

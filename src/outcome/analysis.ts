@@ -28,6 +28,8 @@ export interface AnalysisOptions {
   /** Window of delays for the law of spread, ns. */
   readonly from?: number;
   readonly to?: number;
+  /** The whole-stack fit: "auto" where the widths' answer is in doubt (default), "always" or "never". */
+  readonly field?: "auto" | "always" | "never";
   /** Seed of the Monte Carlo intervals. */
   readonly seed?: number;
   /** Told after each frame. */

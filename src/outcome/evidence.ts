@@ -73,7 +73,7 @@ function lineValue(line: Reading["line"]): { value(t: number): number } {
 /** Frames with at least this much light over its standard deviation say something about shape. */
 const BRIGHT = 8;
 /** A long stack is asked in this many groups of neighbouring frames, added up: hardly any width is mixed in one. */
-const GROUPS = 32;
+const GROUPS = 16;
 
 function shapeOf(reading: Reading): Sign {
   const { frames, widths, light } = reading;

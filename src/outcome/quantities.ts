@@ -2,6 +2,7 @@ import { boltzmann, elementaryCharge } from "../numerics/constants.ts";
 import type { Input } from "../numerics/propagate.ts";
 import { propagate, propagateByMonteCarlo } from "../numerics/propagate.ts";
 import type { Acquisition } from "../stack/acquisition.ts";
+import type { FieldQuantities } from "./field-quantities.ts";
 import type { Derived, Joint } from "./joint.ts";
 import { diffusionOf, quadratic } from "./joint.ts";
 import { squaredLength } from "./length.ts";
@@ -45,8 +46,28 @@ interface Counted {
 export function quantitiesOf(reading: Reading, joint: Joint, seed: number): Quantities {
   const { acquisition } = reading.stack;
   const counted = count(reading, joint, acquisition);
+  return finish(counted, acquisition, reading.preferredLaw, "decay", seed);
+}
+
+/** The same from the whole-stack fit. */
+export function quantitiesOfField(
+  field: FieldQuantities,
+  acquisition: Acquisition,
+  seed: number,
+): Quantities {
+  const diffusion = { value: CM2_PER_S * field.diffusion.value, u: CM2_PER_S * field.diffusion.u };
+  const counted = { diffusion, lifetime: field.lifetime, length2: field.length2, product: null };
+  return finish(counted, acquisition, "field", "field", seed);
+}
+
+function finish(
+  counted: Counted,
+  acquisition: Acquisition,
+  lawSource: Quantity["from"],
+  lifeSource: Quantity["from"],
+  seed: number,
+): Quantities {
   const scales = scalesOf(acquisition);
-  const lawSource = reading.preferredLaw;
   const moved = Math.abs(counted.diffusion.value) >= DETECTABLE * counted.diffusion.u;
   const budget: Result["budget"] = [];
 
@@ -70,8 +91,9 @@ export function quantitiesOf(reading: Reading, joint: Joint, seed: number): Quan
     lengths: lengthsOf(counted, length, moved, lawSource === "line"),
     quantities: {
       diffusion_coefficient: { ...diffusion, from: lawSource },
-      lifetime: lifetime === null ? null : { ...lifetime, from: "decay" },
-      diffusion_length: length,
+      lifetime: lifetime === null ? null : { ...lifetime, from: lifeSource },
+      diffusion_length:
+        length === null ? null : { ...length, from: lifeSource === "field" ? "field" : "outcome" },
       mobility: mobility === null ? null : { ...mobility, from: "outcome" },
     },
   };

@@ -22,6 +22,8 @@ export const quantitySchema = z
   })
   .describe("a quantity with its uncertainty");
 
+const candidateName = z.enum(["diffusion", "annihilation", "capture", "annihilation_and_capture"]);
+
 const withU = z.strictObject({ value: number, u: number.min(0) });
 
 export const lawSchema = z.strictObject({
@@ -129,7 +131,40 @@ export const resultSchema = z.strictObject({
       degenerate_mobility: withU.nullable(),
     })
     .nullable(),
-  field: z.null().describe("the whole-stack fit, when made"),
+  field: z
+    .strictObject({
+      preferred: candidateName,
+      adopted: z.boolean().describe("true where the headline quantities come from this fit"),
+      D: withU.describe("cm²/s"),
+      tau: withU.describe("ns; of free excitons"),
+      diffusion_length: withU.describe("µm; where free excitons end or are caught"),
+      k_n0: withU.nullable().describe("1/ns; annihilation at the centre right after the pulse"),
+      k: withU.nullable().describe("cm²/s; where a density is stated"),
+      capture: withU.nullable().describe("1/ns"),
+      trap_lifetime: withU.nullable().describe("ns"),
+      chi2: number,
+      degrees_of_freedom: z.number().int(),
+      p_value: number,
+      correlations: z
+        .array(z.strictObject({ a: z.string(), b: z.string(), r: number }))
+        .describe("pairs of parameters with |r| > 0.8"),
+      candidates: z.array(
+        z.strictObject({
+          name: candidateName,
+          parameters: z.record(
+            z.string(),
+            z.strictObject({ value: number, u: number.min(0).nullable(), unit: z.string() }),
+          ),
+          p_value: number,
+          aicc: number,
+          weight: number,
+          converged: z.boolean(),
+          reason: z.string(),
+        }),
+      ),
+    })
+    .nullable()
+    .describe("the whole-stack fit of the reaction–diffusion model, when made"),
   budget: z.array(
     z.strictObject({
       quantity: z.enum(["diffusion_coefficient", "diffusion_length", "mobility"]),

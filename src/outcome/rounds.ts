@@ -36,8 +36,11 @@ const BRIGHT = 8;
 const ACCEPTABLE = 0.01;
 const MOST_ROUNDS = 10;
 const NO_LAWS: Reading["laws"] = { line: null, power_law: null, arrest: null, broken_line: null };
-/** Rounds end when D moves by less than this share of its uncertainty. */
-const STANDSTILL = 0.01;
+/**
+ * Rounds end when D moves by less than this share of its uncertainty: where the models hold, each round moves it by some
+ * fiftieth of the round before, so what is left is far below a hundredth.
+ */
+const STANDSTILL = 0.1;
 
 /**
  * Round by round every frame is read against smooth models (law of spread, decay, steady centre and background), the
@@ -85,7 +88,7 @@ export class Rounds {
     let laws: Reading["laws"] = NO_LAWS;
     let decays: Decays | null = null;
     let widths: Width[] = [];
-    let before = Number.NaN;
+    let before = meanDiffusion(line).value;
     let rounds = 0;
     for (; rounds < MOST_ROUNDS; ) {
       rounds++;
@@ -98,8 +101,8 @@ export class Rounds {
       const { value, variance } = meanDiffusion(line);
       const still = Math.abs(value - before) < STANDSTILL * Math.sqrt(variance);
       before = value;
-      if (rounds > 1 && !still) continue;
       // the light moves little once the widths stand: its decay is fitted after the first round and at the end
+      if (rounds > 1 && !still) continue;
       decays = this.fitLight();
       this.smoothLight(decays);
       if (!still) continue;

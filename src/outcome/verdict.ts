@@ -5,9 +5,7 @@ import type { Quantities } from "./quantities.ts";
 import { CM2_PER_S } from "./quantities.ts";
 import type { Reading } from "./reading.ts";
 import type { Result } from "./result.ts";
-
-type Reason = Result["verdict"]["reasons"][number];
-type Level = Reason["level"];
+import { levelOf, type Reason, reason } from "./verdict-reason.ts";
 
 /** A departure this many standard deviations long is no chance; some ten signs are looked at in every recording. */
 const SURE = 4;
@@ -28,18 +26,10 @@ interface Case {
  * result sound, "caution" asks for a look, "unsound" means that the headline numbers should not be used.
  */
 export function judge(seen: Case): Result["verdict"] {
-  const reasons = JUDGES.flatMap((look) => look(seen) ?? []);
-  const rank: Record<Level, number> = { unsound: 0, caution: 1, note: 2 };
-  reasons.sort((a, b) => rank[a.level] - rank[b.level]);
-  const worst = reasons[0]?.level ?? "note";
-  return { level: worst === "note" ? "sound" : worst, reasons };
+  return levelOf(JUDGES.flatMap((look) => look(seen) ?? []));
 }
 
 const z = ({ value, u }: Sign): number => value / u;
-
-function reason(level: Level, code: string, text: string, advice: string): Reason {
-  return { level, code, text, advice };
-}
 
 /** Two digits, never in powers of ten where it can be helped. */
 const short = (value: number): string => String(Number(value.toPrecision(2)));

@@ -21,13 +21,24 @@ import type { Reading } from "./reading.ts";
 /** How far from the centre pixels are looked at one by one, in standard deviations of the frame's spot. */
 const REACH = 5;
 
-/** Fits the whole stack at once, started from widths and decay. */
-export function fitWholeStack(reading: Reading, joint: Joint): StackFits | null {
-  if (joint.decay === null) return null;
+/** The whole-stack fits of a recording with what they were fitted to. */
+export interface WholeStack {
+  readonly data: StackData;
+  readonly fits: StackFits;
+}
+
+/**
+ * Fits the whole stack at once, started from widths and decay; null where it cannot be: no decay to start from, light
+ * that does not stand for the density, or a response that is not Gaussian.
+ */
+export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null {
+  const { acquisition } = reading.stack;
+  if (joint.decay === null || acquisition.sample.emissionOrder !== 1) return null;
+  if (acquisition.response?.kind === "sampled") return null;
   const data = stackDataOf(reading);
   const annihilation = reading.decays?.fits.annihilation ?? null;
   const hint = annihilation?.converged ? annihilation.parameters[annihilation.names.indexOf("k_n0")]! : null;
-  return fitCandidates(data, symmetryOf(reading), startOf(reading, joint, data), hint);
+  return { data, fits: fitCandidates(data, symmetryOf(reading), startOf(reading, joint, data), hint) };
 }
 
 /** The frames that a model of the light must describe: all but those set aside for what they are. */

@@ -6,6 +6,7 @@ import { methodsText } from "./methods.ts";
 import { PAGE_STYLE } from "./page-style.ts";
 import {
   budgetTables,
+  candidateTables,
   densityTable,
   framesTable,
   lawTables,
@@ -51,6 +52,7 @@ export function renderReport(analysis: Analysis, figures: Figures, viewer: Viewe
       ...budgetTables(result),
     ]),
     ruled("Numbers in other forms", [`<div class="tables">${otherForms(result).join("\n")}</div>`]),
+    ...(result.field === null ? [] : [ruled("The whole stack at once", candidateTables(result))]),
     ruled("Laws tried", lawTables(result)),
     ruled("Methods", [
       `<p>For a supplement, to be copied as it stands.</p>`,

@@ -1,7 +1,7 @@
 import type { Law, Result } from "../outcome/result.ts";
 import { escapeText as e } from "./figure-parts.ts";
 import { concise, plain, symbols } from "./notation.ts";
-import { DECAY_LAW, FLAG, probability, QUANTITY, TRANSPORT_LAW, unitText } from "./wording.ts";
+import { CANDIDATE, DECAY_LAW, FLAG, probability, QUANTITY, TRANSPORT_LAW, unitText } from "./wording.ts";
 
 interface Column {
   readonly text: string;
@@ -108,6 +108,54 @@ export function budgetTables(result: Result): string[] {
     return [scroll(table(columns, body, { caption }), `Uncertainty budget of ${QUANTITY[name].symbol}`)];
   });
 }
+
+/** The candidates of the whole-stack fit side by side; empty where it was not made. */
+export function candidateTables({ field }: Result): string[] {
+  if (field === null) return [];
+  const show = (parameters: Candidate["parameters"], names: readonly string[], factor = 1): string => {
+    const found = names.flatMap((name) => parameters[name] ?? []);
+    if (found.length === 0) return "–";
+    const value = found.reduce((sum, each) => sum + each.value, 0) / found.length;
+    const u = found[0]?.u ?? null;
+    return u === null ? plain(factor * value, 3) : concise(factor * value, factor * u);
+  };
+  const rows = field.candidates.map(({ name, parameters, p_value, weight, converged, reason }) => ({
+    chosen: name === field.preferred,
+    cells: [
+      CANDIDATE[name] + (name === field.preferred ? " (preferred)" : ""),
+      // 1 µm²/ns is 10 cm²/s
+      e(show(parameters, parameters.D === undefined ? ["D_xx", "D_yy"] : ["D"], 10)),
+      e(show(parameters, ["tau"])),
+      e(show(parameters, ["k_n0"])),
+      e(show(parameters, ["capture"])),
+      e(show(parameters, ["trap_lifetime"])),
+      probability(p_value),
+      converged ? weight.toFixed(2) : e(reason),
+    ],
+  }));
+  const columns = ["D (cm²/s)", "τ (ns)", "k·n₀ (1/ns)", "c (1/ns)", "τ of traps (ns)", "p", "Weight"];
+  const candidates = scroll(
+    table([{ text: "Candidate" }, ...columns.map((text) => ({ text, numeric: true }))], rows, {
+      caption: "Candidates for the whole stack",
+    }),
+    "Candidates for the whole stack",
+  );
+  const strong = field.correlations.map(
+    ({ a, b, r }) => `${symbols(a)} and ${symbols(b)} (r = ${r.toFixed(2)})`,
+  );
+  const notes = [
+    field.adopted
+      ? "The numbers at the top come from the preferred candidate."
+      : "The numbers at the top come from the widths; this fit stands beside them.",
+    ...(field.capture === null
+      ? []
+      : ["Trapped excitons are taken to shine like free ones: τ and c rest on that, D and L do not."]),
+    ...(strong.length === 0 ? [] : [`Hardly told apart: ${strong.join(", ")}.`]),
+  ];
+  return [candidates, `<p>${e(notes.join(" "))}</p>`];
+}
+
+type Candidate = NonNullable<Result["field"]>["candidates"][number];
 
 export function lawTables(result: Result): string[] {
   const spread = laws("Laws of spread", result.transport.models, result.transport.preferred, TRANSPORT_LAW);

@@ -2,6 +2,7 @@ import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
 import { concise, plain } from "./notation.ts";
 import {
+  CANDIDATE,
   counted,
   DECAY_LAW,
   FLAG,
@@ -97,6 +98,7 @@ function howFound(result: Result, width: number): string[] {
     lines.push(["", `exponent α = ${concise(transport.exponent.value, transport.exponent.u)}`]);
   }
   if (decay !== null) lines.push(["Law of decay", decayText(decay)]);
+  if (result.field !== null) lines.push(["Whole stack", fieldText(result.field)]);
   lines.push(["Set aside", setAsideText(frames)]);
   return lines.flatMap(([label, text]) => {
     const [first = "", ...rest] = wrap(text, width - LABEL - 2, "");
@@ -118,6 +120,16 @@ export function spreadText(transport: Result["transport"]): string {
 }
 
 /** The same for the decay. */
+/** The whole-stack fit in one line. */
+export function fieldText(field: NonNullable<Result["field"]>): string {
+  const rates = [
+    ...(field.k_n0 === null ? [] : [`k·n₀ = ${concise(field.k_n0.value, field.k_n0.u)} /ns`]),
+    ...(field.capture === null ? [] : [`c = ${concise(field.capture.value, field.capture.u)} /ns`]),
+  ];
+  const d = `D = ${concise(field.D.value, field.D.u)} cm²/s`;
+  return `${CANDIDATE[field.preferred]}; ${[d, ...rates].join(", ")}; p = ${probability(field.p_value)}`;
+}
+
 export function decayText(decay: NonNullable<Result["decay"]>): string {
   const candidates = Object.values(decay.models).filter((law) => law !== null).length;
   return `${DECAY_LAW[decay.preferred]}${fitText(decay.models[decay.preferred] ?? null, candidates)}${birgeText(decay.birge_factor)}`;

@@ -38,6 +38,15 @@ export const DECAY_LAW: Readonly<Record<DecayLaw, string>> = {
   annihilation: "decay with annihilation",
 };
 
+export type CandidateName = NonNullable<Result["field"]>["preferred"];
+
+export const CANDIDATE: Readonly<Record<CandidateName, string>> = {
+  diffusion: "diffusion",
+  annihilation: "diffusion and annihilation",
+  capture: "diffusion and capture into traps",
+  annihilation_and_capture: "diffusion, annihilation and capture",
+};
+
 const FROM: Readonly<Record<Quantity["from"], string>> = {
   ...TRANSPORT_LAW,
   field: "whole-stack fit",

@@ -1,0 +1,99 @@
+import type { CandidateFit } from "../field/stack-fit/candidates.ts";
+import type { FieldQuantities } from "./field-quantities.ts";
+import { describes } from "./field-quantities.ts";
+import type { Quantities } from "./quantities.ts";
+import { CM2_PER_S } from "./quantities.ts";
+import type { Result } from "./result.ts";
+import { levelOf, type Reason, reason } from "./verdict-reason.ts";
+import type { WholeStack } from "./whole-stack.ts";
+
+/** Reasons that say that widths and decay mislead, and that a model of the whole stack may do better. */
+const MISLEADING = [
+  "line-does-not-fit",
+  "annihilation-suspected",
+  "traps-suspected",
+  "spot-not-gaussian",
+  "spot-shrinks",
+];
+/** Reasons that speak of the same and are answered where a whole-stack model fits. */
+const ANSWERED = [...MISLEADING, "residuals-run", "decay-does-not-fit", "decay-not-exponential"];
+
+/** Whether the widths' answer is in doubt for a reason that a whole-stack model could explain. */
+export function isMisled(verdict: Result["verdict"]): boolean {
+  return verdict.reasons.some(
+    ({ code, level }) => level !== "note" && (MISLEADING.includes(code) || code === "earlier-pulses-glow"),
+  );
+}
+
+/** Whether the headline quantities come from the whole-stack fit: widths misled, and a model describes the stack. */
+export function isAdopted(verdict: Result["verdict"], whole: WholeStack): boolean {
+  return isMisled(verdict) && describes(whole.fits.preferred);
+}
+
+/** The verdict with what the whole-stack fit found. */
+export function judgeField(
+  plain: Result["verdict"],
+  whole: WholeStack,
+  field: FieldQuantities,
+  widths: Quantities,
+): Result["verdict"] {
+  const { preferred } = whole.fits;
+  const line = widths.quantities.diffusion_coefficient;
+  const d = { value: CM2_PER_S * field.diffusion.value, u: CM2_PER_S * field.diffusion.u };
+  if (isAdopted(plain, whole)) {
+    const kept = plain.reasons
+      .filter(({ code }) => !ANSWERED.includes(code))
+      .map((each): Reason => (each.code === "earlier-pulses-glow" ? { ...each, level: "note" } : each));
+    return levelOf([wouldMislead(preferred, line), ...kept]);
+  }
+  if (!describes(preferred)) {
+    return levelOf([
+      reason(
+        isMisled(plain) ? "unsound" : "caution",
+        "no-model-fits",
+        "no candidate for the whole stack (diffusion, annihilation, capture, both) describes the recording either",
+        "look at the residual maps frame by frame: another species, a moving focus, or a sample that is not uniform",
+      ),
+      ...plain.reasons,
+    ]);
+  }
+  const apart = Math.abs(d.value - line.value) / Math.hypot(d.u, line.u_statistical);
+  if (apart < 4) return plain;
+  return levelOf([
+    reason(
+      "caution",
+      "whole-stack-disagrees",
+      `the whole-stack fit gives D = ${d.value.toPrecision(3)} cm²/s, ${apart.toFixed(0)} standard deviations from the widths' ${line.value.toPrecision(3)}`,
+      "look at the candidates in the report; quote neither number before the difference is understood",
+    ),
+    ...plain.reasons,
+  ]);
+}
+
+function wouldMislead(fit: CandidateFit, line: Quantities["quantities"]["diffusion_coefficient"]): Reason {
+  const claimed = `${line.value.toPrecision(3)} ± ${line.u.toPrecision(1)} cm²/s`;
+  return reason(
+    "caution",
+    "widths-would-mislead",
+    `the widths alone would have claimed D = ${claimed}, which is wrong because ${because(fit)}; the numbers come from the fit of the whole stack, which describes it`,
+    "quote them with the model and its parameters, and confirm by a recording at another excitation density or temperature",
+  );
+}
+
+function because(fit: CandidateFit): string {
+  const show = (name: "k_n0" | "capture"): string => {
+    const i = fit.names.indexOf(name);
+    const u = Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
+    return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)} /ns`;
+  };
+  switch (fit.candidate.name) {
+    case "annihilation":
+      return `excitons annihilate each other (k·n₀ = ${show("k_n0")})`;
+    case "capture":
+      return `traps catch excitons (at ${show("capture")}) that then stand still`;
+    case "annihilation_and_capture":
+      return `excitons annihilate each other (k·n₀ = ${show("k_n0")}) and traps catch them (at ${show("capture")})`;
+    case "diffusion":
+      return "one Gaussian is no summary of a frame here, for instance because excitons of earlier pulses lie under the new ones";
+  }
+}
