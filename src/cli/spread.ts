@@ -37,8 +37,10 @@ export async function spread(file: string, options: SpreadOptions): Promise<Exit
 
   const artist = hireArtist();
   try {
-    const stack = await openStack(file, openOptions(options));
+    const checksum = artist.checksum(file);
+    const stack = await openStack(file, { ...openOptions(options), sha256: "" });
     const analysis = analyseWatched(stack, wanted, options.quiet === true ? null : process.stderr);
+    analysis.result.input.sha256 = await checksum;
     await writing(folder, "-o", () =>
       uninterrupted(() => writeReports(analysis, folder, artist.draw), discardUnfinished),
     );

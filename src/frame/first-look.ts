@@ -31,7 +31,7 @@ export function firstLook(
   if (!(peak > 0)) return null;
   const variance = varianceFromHalfArea(kind, smooth, background + peak / 2);
   const [x, y] = [top % width, Math.floor(top / width)];
-  const reach = 8 * Math.sqrt(variance) + 8;
+  const reach = 6 * Math.sqrt(variance) + 6;
   const rectangle = rectangleAround([x, y], [reach, kind === "map" ? reach : 0], width, height);
   const patch = cutPatch(picture, width, rectangle);
   const calmPatch = cutPatch(smooth, width, rectangle).data;

@@ -42,7 +42,8 @@ export function fitLinear(problem: LinearProblem): LinearFit {
   const n = problem.design.length;
   if (m < n) throw new RangeError(`A linear fit of ${n} parameters needs as many points; there are ${m}.`);
   const y = Float64Array.from(problem.y);
-  const white = (values: ArrayLike<number>) => whiten(Float64Array.from(values), problem);
+  const factors = problem.precision?.map(factored) ?? null;
+  const white = (values: ArrayLike<number>) => whiten(Float64Array.from(values), problem.sigma, factors);
   const columns = problem.design.map(white);
   const norms = columns.map((column) => Math.sqrt(column.reduce((sum, v) => sum + v * v, 0)));
   const x = new Matrix(m, n);
@@ -93,15 +94,26 @@ function covarianceFrom(unit: Matrix, norms: readonly number[], variance: number
   return { covariance, correlation, standardErrors };
 }
 
-/** Divides by the square root of the noise's covariance, in place: Lᵀv for each group with V⁻¹ = L·Lᵀ. */
-function whiten(values: Float64Array, { sigma, precision }: LinearProblem): Float64Array {
+/** L of V⁻¹ = L·Lᵀ of one group of points. */
+function factored(precision: Float64Array): Float64Array {
+  const l = precision.slice();
+  if (!factorCholesky(l, Math.round(Math.sqrt(l.length)))) {
+    throw new RangeError("An inverse covariance is not positive definite.");
+  }
+  return l;
+}
+
+/** Divides by the square root of the noise's covariance, in place: Lᵀv for each group. */
+function whiten(
+  values: Float64Array,
+  sigma: ArrayLike<number> | undefined,
+  factors: readonly Float64Array[] | null,
+): Float64Array {
   if (sigma) for (let i = 0; i < values.length; i++) values[i]! /= sigma[i]!;
-  if (!precision) return values;
+  if (factors === null) return values;
   let first = 0;
-  for (const block of precision) {
-    const k = Math.round(Math.sqrt(block.length));
-    const l = block.slice();
-    if (!factorCholesky(l, k)) throw new RangeError("An inverse covariance is not positive definite.");
+  for (const l of factors) {
+    const k = Math.round(Math.sqrt(l.length));
     for (let i = 0; i < k; i++) {
       let sum = 0;
       for (let row = i; row < k; row++) sum += l[row * k + i]! * values[first + row]!;

@@ -8,6 +8,7 @@ import {
   common,
   DATA,
   type Drawing,
+  errorBars,
   INK,
   type KeyEntry,
   keyRow,
@@ -81,14 +82,15 @@ function lightPanel(
     },
     marks: [
       plot.frame({ stroke: INK, strokeOpacity: 0.35 }),
-      plot.link(inside, {
-        x1: "delay_ns",
-        x2: "delay_ns",
-        y1: (row: WithLight) => clamp(row.photons - row.u_photons),
-        y2: (row: WithLight) => clamp(row.photons + row.u_photons),
-        stroke: (row: WithLight) => (row.used_in_decay ? DATA : asideColour(null)),
-        strokeOpacity: 0.75,
-      }),
+      errorBars(
+        drawing,
+        inside.map((row) => ({
+          x: row.delay_ns,
+          low: clamp(row.photons - row.u_photons),
+          high: clamp(row.photons + row.u_photons),
+          colour: row.used_in_decay ? DATA : asideColour(null),
+        })),
+      ),
       plot.dot(used, { x: "delay_ns", y: "photons", r: 2.6, fill: DATA }),
       plot.lineY(analysis.lightCurve, { x: "delay", y: "value", stroke: LAW, strokeWidth: 2 }),
       ...flagCounts(aside).map(([flag]) =>

@@ -75,6 +75,30 @@ export interface Panel {
 }
 
 /** A plot as a panel at the height it was drawn with; its style sheet goes, as the figure has its own fonts. */
+export interface ErrorBar {
+  readonly x: number;
+  readonly low: number;
+  readonly high: number;
+  readonly colour: string;
+}
+
+/** Error bars as one broken line a colour: hundreds of elements of their own would take most of the drawing's time. */
+export function errorBars({ plot }: Drawing, bars: readonly ErrorBar[]): Plot.Markish {
+  const points = bars.flatMap(({ x, low, high, colour }) => [
+    { x, y: low, colour },
+    { x, y: high, colour },
+    { x, y: Number.NaN, colour },
+  ]);
+  return plot.line(points, {
+    x: "x",
+    y: "y",
+    z: "colour",
+    stroke: "colour",
+    strokeOpacity: 0.75,
+    strokeWidth: 1.5,
+  });
+}
+
 export function panel(node: Element, height: number): Panel {
   return { svg: node.outerHTML.replace(/<style>[\s\S]*?<\/style>/g, ""), height };
 }

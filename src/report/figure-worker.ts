@@ -1,4 +1,5 @@
 import { parentPort } from "node:worker_threads";
+import { fileSource, sha256Of } from "../stack/file-source.ts";
 import type { Drawing } from "./figure-parts.ts";
 import { analysisOf, type FigureRequest } from "./figure-request.ts";
 import { drawFigures, loadDrawing } from "./figures.ts";
@@ -10,9 +11,20 @@ const drawing = loadDrawing().then((loaded) => {
   return loaded;
 });
 
-parentPort?.on("message", async (request: FigureRequest) => {
-  parentPort?.postMessage(drawFigures(await drawing, analysisOf(request)));
+parentPort?.on("message", async (request: FigureRequest | string) => {
+  // a path: its checksum is wanted
+  if (typeof request === "string") parentPort?.postMessage(checksum(request));
+  else parentPort?.postMessage(drawFigures(await drawing, analysisOf(request)));
 });
+
+/** Empty where the file cannot be read: whoever analyses it says so better. */
+function checksum(path: string): string {
+  try {
+    return sha256Of(fileSource(path));
+  } catch {
+    return "";
+  }
+}
 
 function practise({ plot, document }: Drawing): void {
   const points = Array.from({ length: 20 }, (_, i) => ({

@@ -9,16 +9,14 @@ import type { ByteSource } from "./tiff/source.ts";
 
 const HASH_BLOCK = 4 * 2 ** 20;
 
-/** Files up to this size are kept in memory: every frame is read several times. */
-const KEPT = 64 * 2 ** 20;
-
 /**
- * A file's bytes. A small file is read once and kept; a large one is read piece by piece, never as a whole, through one
- * buffer, and opened for each piece, so that many stacks at once hold no file open.
+ * A file read piece by piece, never as a whole, through one buffer.
+ *
+ * The file is opened for each piece, so that many stacks at once hold no file open; a piece is a frame, and opening
+ * costs far less than decoding it.
  */
 export function fileSource(path: string): ByteSource {
   const size = fileSize(path);
-  if (size <= KEPT) return keptSource(path, size);
   let buffer = new Uint8Array(0);
   return {
     name: path,
@@ -28,30 +26,16 @@ export function fileSource(path: string): ByteSource {
       const bytes = buffer.subarray(0, length);
       const got = attempt(path, () => readInto(path, bytes, offset));
       if (got < length) {
-        throw becameShorter(path);
+        throw new InputFault(
+          `${path} became shorter while it was read; wait until it is copied and start again`,
+          {
+            file: path,
+          },
+        );
       }
       return bytes;
     },
   };
-}
-
-function keptSource(path: string, size: number): ByteSource {
-  const file = attempt(path, () => readFileSync(path));
-  const bytes = new Uint8Array(file.buffer, file.byteOffset, file.length);
-  return {
-    name: path,
-    size,
-    read(offset, length) {
-      if (offset + length > bytes.length) throw becameShorter(path);
-      return bytes.subarray(offset, offset + length);
-    },
-  };
-}
-
-function becameShorter(path: string): InputFault {
-  return new InputFault(`${path} became shorter while it was read; wait until it is copied and start again`, {
-    file: path,
-  });
 }
 
 /** SHA-256 of a whole source, in hexadecimal. */

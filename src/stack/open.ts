@@ -25,6 +25,8 @@ export interface OpenOptions {
   readonly axes?: string;
   /** Settings by dotted key ("space.pixel": "0.13 um"), over what the acquisition file says. */
   readonly overrides?: Readonly<Record<string, string>>;
+  /** SHA-256 of the file where it is taken elsewhere, beside the analysis; default: taken here. */
+  readonly sha256?: string;
 }
 
 /** A recording with what is written about it, before anything is asked of either. */
@@ -72,7 +74,7 @@ export async function openStack(path: string, options: OpenOptions = {}): Promis
     },
     dark,
     acquisition,
-    source: { file: path, sha256: sha256Of(raw.source), shape: raw.shape, axes: raw.axes },
+    source: { file: path, sha256: options.sha256 ?? sha256Of(raw.source), shape: raw.shape, axes: raw.axes },
   };
 }
 
