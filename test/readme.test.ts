@@ -22,7 +22,9 @@ describe("the README lists", () => {
   });
 
   test("every code of a verdict, and none that does not exist", () => {
-    const source = readFileSync(join(root, "src/outcome/verdict.ts"), "utf8");
+    const source = ["verdict.ts", "field-verdict.ts"]
+      .map((file) => readFileSync(join(root, "src/outcome", file), "utf8"))
+      .join("\n");
     const codes = new Set([...source.matchAll(/"([a-z]+(?:-[a-z]+)+)",\n/g)].map(([, code]) => code));
     const rows = [...readme.matchAll(/^\| `([a-z-]+)` \| (?:note|caution|unsound)/gm)].map(
       ([, code]) => code,

@@ -44,7 +44,7 @@ export function judgeField(
     const kept = plain.reasons
       .filter(({ code }) => !ANSWERED.includes(code))
       .map((each): Reason => (each.code === "earlier-pulses-glow" ? { ...each, level: "note" } : each));
-    return levelOf([wouldMislead(preferred, line), ...kept]);
+    return levelOf([wouldMislead(preferred, line), ...confirmed(preferred), ...kept]);
   }
   if (!describes(preferred)) {
     return levelOf([
@@ -80,19 +80,46 @@ function wouldMislead(fit: CandidateFit, line: Quantities["quantities"]["diffusi
   );
 }
 
+/** The suspicions that the whole-stack fit bears out. */
+function confirmed(fit: CandidateFit): Reason[] {
+  const found: Reason[] = [];
+  if (fit.candidate.annihilation) {
+    found.push(
+      reason(
+        "caution",
+        "annihilation-suspected",
+        `the whole-stack fit needs annihilation, k·n₀ = ${rate(fit, "k_n0")} at the centre right after the pulse`,
+        "repeat at a tenth of the pulse energy: k·n₀ must follow it, and D and τ must stay",
+      ),
+    );
+  }
+  if (fit.candidate.capture) {
+    found.push(
+      reason(
+        "caution",
+        "traps-suspected",
+        `the whole-stack fit needs traps that catch free excitons at ${rate(fit, "capture")}; τ and this rate take trapped excitons to shine like free ones, D and L do not depend on it`,
+        "compare spots, temperatures and excitation: traps fill at higher density and empty at higher temperature",
+      ),
+    );
+  }
+  return found;
+}
+
+function rate(fit: CandidateFit, name: "k_n0" | "capture"): string {
+  const i = fit.names.indexOf(name);
+  const u = Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
+  return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)} /ns`;
+}
+
 function because(fit: CandidateFit): string {
-  const show = (name: "k_n0" | "capture"): string => {
-    const i = fit.names.indexOf(name);
-    const u = Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
-    return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)} /ns`;
-  };
   switch (fit.candidate.name) {
     case "annihilation":
-      return `excitons annihilate each other (k·n₀ = ${show("k_n0")})`;
+      return `excitons annihilate each other (k·n₀ = ${rate(fit, "k_n0")})`;
     case "capture":
-      return `traps catch excitons (at ${show("capture")}) that then stand still`;
+      return `traps catch excitons (at ${rate(fit, "capture")}) that then stand still`;
     case "annihilation_and_capture":
-      return `excitons annihilate each other (k·n₀ = ${show("k_n0")}) and traps catch them (at ${show("capture")})`;
+      return `excitons annihilate each other (k·n₀ = ${rate(fit, "k_n0")}) and traps catch them (at ${rate(fit, "capture")})`;
     case "diffusion":
       return "one Gaussian is no summary of a frame here, for instance because excitons of earlier pulses lie under the new ones";
   }
