@@ -3,6 +3,7 @@ import type { Result } from "../outcome/result.ts";
 import { concise, plain, symbols } from "./notation.ts";
 import {
   baseName,
+  CANDIDATE,
   counted,
   DECAY_LAW,
   flagCounts,
@@ -21,6 +22,7 @@ export function methodsText(analysis: Analysis): string[] {
     spotText(analysis),
     spreadMethod(analysis.result),
     decayMethod(analysis),
+    fieldMethod(analysis.result),
     outcomeText(analysis),
   ].filter((text) => text !== "");
 }
@@ -98,6 +100,32 @@ function instrumentText({ stack }: Analysis): string {
   if (period !== null) parts.push(`summed over earlier pulses (period ${plain(period)} ns)`);
   if (slit !== null) parts.push(`corrected for light beside the slit of ${plain(slit.width.value)} µm`);
   return parts.length === 0 ? "" : `, ${parts.join(", ")}`;
+}
+
+function fieldMethod({ field }: Result): string {
+  if (field === null) return "";
+  const rates = [
+    ...(field.k_n0 === null
+      ? []
+      : [`k·n₀ = ${concise(field.k_n0.value, field.k_n0.u)} /ns at the centre right after the pulse`]),
+    ...(field.capture === null
+      ? []
+      : [
+          `capture at ${concise(field.capture.value, field.capture.u)} /ns, trapped excitons taken to shine like free ones`,
+        ]),
+  ];
+  const found = [
+    `D = ${concise(field.D.value, field.D.u)} cm²/s`,
+    `τ = ${concise(field.tau.value, field.tau.u)} ns`,
+    ...rates,
+  ];
+  return (
+    "The reaction–diffusion model ∂n/∂t = ∇·D∇n − n/τ − k n² − c n for free and ∂m/∂t = c n − m/τ_m for trapped excitons was fitted to all pixels of all frames at once by maximum likelihood (damped Fisher scoring), " +
+    `with its terms chosen by corrected Akaike weight and goodness of fit: ${CANDIDATE[field.preferred]} (${found.join(", ")}; χ²/dof = ${(field.chi2 / field.degrees_of_freedom).toFixed(2)} over rings of groups of frames, p ${equalsText(field.p_value)}). ` +
+    (field.adopted
+      ? "D, τ and L are from this fit."
+      : "D, τ and L are from the widths and the decay; this fit stands beside them.")
+  );
 }
 
 function outcomeText({ stack, result }: Analysis): string {
