@@ -8,6 +8,8 @@ export type { Truth } from "./field/truth.ts";
 export type { Covariance, FrameFlag, Spot } from "./frame/spot.ts";
 export { analyse } from "./outcome/analyse.ts";
 export type { Analysis, AnalysisOptions, CurvePoint } from "./outcome/analysis.ts";
+export { type Forecast, forecast } from "./outcome/forecast.ts";
+export { type PlanChanges, planFromResult, planFromScenario } from "./outcome/plan.ts";
 export {
   type DecayLaw,
   type FrameRow,

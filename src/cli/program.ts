@@ -1,5 +1,6 @@
 import { Command, CommanderError, Option } from "commander";
 import { version } from "../version.ts";
+import type { ForecastOptions } from "./forecast.ts";
 import type { InspectOptions } from "./inspect.ts";
 import { addSetting, type SettingOptions } from "./settings.ts";
 import { complain, ExitCode } from "./shell.ts";
@@ -55,6 +56,9 @@ function buildProgram(finish: (code: ExitCode) => void): Command {
   synthCommand(program).action(async (scenario: string, options: SynthOptions) => {
     finish(await (await import("./synth.ts")).synth(scenario, options));
   });
+  forecastCommand(program).action(async (plan: string, options: ForecastOptions) => {
+    finish(await (await import("./forecast.ts")).forecast(plan, options));
+  });
   return program;
 }
 
@@ -105,6 +109,24 @@ function synthCommand(program: Command): Command {
     .argument("<SCENARIO.toml>", "the scenario: spot, motion, decay, traps, detector, delays")
     .requiredOption("-o, --output <STACK.tif>", "the stack to write")
     .option("--seed <N>", "seed of the noise (default: the scenario's, else 1)");
+}
+
+function forecastCommand(program: Command): Command {
+  return program
+    .command("forecast")
+    .summary("how precise a planned recording will be, and what would halve the error")
+    .description(
+      "Tell from PLAN how precise D, lifetime, diffusion length and trap parameters will be, and what " +
+        "would halve the error of D. PLAN is a scenario as for `gleamwalk synth`, or the result.json of a " +
+        "pilot recording; the options below change it.",
+    )
+    .argument("<PLAN>", "SCENARIO.toml or result.json")
+    .option("--photons <N>", "detected photons in the first frame after the pulse")
+    .option("--frames <N>", "number of frames")
+    .option("--first <TIME>", 'delay of the first frame, such as "-1 ns"; a bare number is ns')
+    .option("--step <TIME>", "time from frame to frame")
+    .option("--sigma0 <LENGTH>", 'standard deviation of the spot, such as "0.3 um"; a bare number is µm')
+    .option("--json", "print the forecast as JSON to stdout and nothing else");
 }
 
 function addSettingOptions(command: Command): Command {

@@ -46,7 +46,7 @@ export function fieldQuantities(data: StackData, { preferred }: StackFits): Fiel
 }
 
 /** ∂(½⟨x²⟩)/∂p by central differences; light, centre and background do not move excitons. */
-function travelSlopes(data: StackData, names: readonly Name[], p: Float64Array): number[] {
+export function travelSlopes(data: StackData, names: readonly Name[], p: Float64Array): number[] {
   const v = valuesOf(names, p);
   return names.map((name) => {
     if (["amplitude", "x", "y", "background", "trap_lifetime"].includes(name)) return 0;
