@@ -51,7 +51,7 @@ function systematic({ systematic_relative_u: u }: Forecast): string {
 
 const REMEDIES: readonly [RemedyName, string, string][] = [
   ["light", "more light", "light"],
-  ["window", "longer delays", "steps between frames"],
+  ["window", "longer delays", "time step"],
   ["spot", "a smaller spot", "σ₀"],
 ];
 

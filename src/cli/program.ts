@@ -117,10 +117,10 @@ function forecastCommand(program: Command): Command {
     .summary("how precise a planned recording will be, and what would halve the error")
     .description(
       "Tell from PLAN how precise D, lifetime, diffusion length and trap parameters will be, and what " +
-        "would halve the error of D. PLAN is a scenario as for `gleamwalk synth`, or the result.json of a " +
-        "pilot recording; the options below change it.",
+        "would halve the error of D. PLAN is a scenario as for `gleamwalk synth`, or a pilot recording " +
+        "or its result.json; the options below change it.",
     )
-    .argument("<PLAN>", "SCENARIO.toml or result.json")
+    .argument("<PLAN>", "SCENARIO.toml, result.json or STACK.tif")
     .option("--photons <N>", "detected photons in the first frame after the pulse")
     .option("--frames <N>", "number of frames")
     .option("--first <TIME>", 'delay of the first frame, such as "-1 ns"; a bare number is ns')

@@ -200,7 +200,7 @@ function withUnit(expected: Expected | null, unit: string): ForecastQuantity | n
 
 function cautionsFor({ medium }: Scenario, { diffusion, lifetime }: StackPrecision): string[] {
   const cautions = [
-    "More laser power is not the same as more light: it brings annihilation, heat, damage to the sample and a hazard to eyes. Longer exposure and better collection bring none of these. Your site's laser safety rules and its laser safety officer decide what power may be used.",
+    "More laser power is not the same as more light: it brings annihilation, damage to the sample and a hazard to eyes. Longer exposure and better collection bring none of these. A smaller spot packs the same excitons more densely, which brings annihilation too. Your site's laser safety rules and its laser safety officer decide what power may be used.",
   ];
   if (diffusion.u > COARSE * Math.abs(diffusion.value) || lifetime.u > COARSE * lifetime.value) {
     cautions.push(

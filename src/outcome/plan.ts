@@ -75,6 +75,13 @@ function notAResult(file: string, wrong: string, cause?: unknown): InputFault {
 function settingsOf(result: Result, file: string): Settings {
   const { quantities, frames, input } = result;
   const field = result.field?.adopted ? result.field : null;
+  const { from } = quantities.diffusion_coefficient;
+  if (from !== "line" && from !== "field") {
+    throw new InputFault(
+      `${file}: the pilot's spot does not spread along a straight line and no whole-stack fit describes it; analyse it with gleamwalk spread --field, or write a scenario`,
+      { file, where: "quantities.diffusion_coefficient" },
+    );
+  }
   const d = field?.D.value ?? quantities.diffusion_coefficient.value;
   const tau = field?.tau.value ?? quantities.lifetime?.value;
   if (tau === undefined) {

@@ -33,6 +33,14 @@ function file(name: string, text: string): string {
 const scenario = file("plan.toml", SCENARIO);
 const traps = file("traps.toml", `${SCENARIO}capture = "0.2 /ns"\ntrap_lifetime = "12 ns"\n`);
 
+/** A result as of a recording whose spot stops spreading. */
+function arrested(): string {
+  const stack = place(folder, "arrested", spotStack());
+  const result = JSON.parse(gleamwalk(["spread", stack, "-o", join(folder, "arrested"), "--json"]).out);
+  result.quantities.diffusion_coefficient.from = "arrest";
+  return JSON.stringify(result);
+}
+
 const told = (args: readonly string[]) => JSON.parse(gleamwalk(["forecast", ...args, "--json"]).out);
 
 describe("forecast", () => {
@@ -41,7 +49,7 @@ describe("forecast", () => {
     expect({ code, err }).toEqual({ code: 0, err: "" });
     for (const part of ["D    0.5", "τ    5.0", "L    0.5", "more light", "longer delays", "a smaller spot"])
       expect(out).toContain(part);
-    expect(out.replace(/\s+/g, " ")).toMatch(/annihilation, heat, damage .*laser safety rules/);
+    expect(out.replace(/\s+/g, " ")).toMatch(/annihilation, damage .*hazard to eyes.*laser safety rules/);
     // 2 % of the pixel's 1 % and 0.5 % of the time base: √(2² + 0.5²)
     expect(out).toContain("add 2.1 % to D");
   });
@@ -107,6 +115,8 @@ describe("forecast", () => {
     const result = JSON.parse(gleamwalk(["spread", stack, "-o", join(folder, "again"), "--json"]).out);
     const { diffusion_coefficient: d } = told([path]).quantities;
     expect(Math.abs(d.u / result.quantities.diffusion_coefficient.u_statistical - 1)).toBeLessThan(0.1);
+    // the recording itself is analysed first
+    expect(told([stack]).quantities).toEqual(told([path]).quantities);
   });
 
   test.each<[string, string[], RegExp]>([
@@ -114,6 +124,7 @@ describe("forecast", () => {
     ["a scenario without a lifetime", [file("a.toml", SCENARIO.replace(/lifetime.*/, ""))], /life\.lifetime/],
     ["a JSON file that is no result", [file("a.json", '{"schema": 1}')], /a\.json .*result\.json/],
     ["a JSON file that is broken", [file("b.json", "{")], /b\.json is not valid JSON/],
+    ["a pilot whose spot stops", [file("c.json", arrested())], /c\.json: .*--field/],
     ["photons that are no number", [scenario, "--photons", "many"], /--photons "many"/],
     ["half a frame", [scenario, "--frames", "2.5"], /--frames "2\.5"/],
     ["no photons", [scenario, "--photons", "0"], /--photons "0"/],
