@@ -28,8 +28,12 @@ function library() {
 async function commandLine() {
   await rm(join(out, "cli"), { recursive: true, force: true });
   await build({
-    // the drawing thread is started by its file's name beside the command line's
-    entryPoints: { main: "src/cli/main.ts", "figure-worker": "src/report/figure-worker.ts" },
+    // threads are started by their file's name beside the command line's
+    entryPoints: {
+      main: "src/cli/main.ts",
+      "figure-worker": "src/report/figure-worker.ts",
+      "closure-worker": "src/cli/closure-worker.ts",
+    },
     outdir: join(out, "cli"),
     bundle: true,
     splitting: true,

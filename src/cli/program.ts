@@ -80,7 +80,8 @@ function spreadCommand(program: Command): Command {
     .option("--to <TIME>", "last delay of the law of spread")
     .option("--field", "fit the whole stack at once even where nothing speaks against the widths")
     .option("--no-field", "never fit the whole stack at once")
-    .option("--seed <N>", "seed of the Monte Carlo intervals");
+    .option("--closure <N>", "draw N stacks from the fitted model, analyse each, report bias and coverage")
+    .option("--seed <N>", "seed of the Monte Carlo intervals and of --closure");
   return addSettingOptions(command)
     .option("--json", "print the result as JSON to stdout and nothing else there")
     .option("-q, --quiet", "print nothing but faults");

@@ -1,17 +1,17 @@
 import { SingleBar } from "cli-progress";
 
-/** A bar over the frames. It shows only on a terminal; elsewhere both functions do nothing. */
+/** A bar over frames or stacks. It shows only on a terminal; elsewhere both functions do nothing. */
 export interface Progress {
   readonly update: (done: number, total: number) => void;
   readonly end: () => void;
 }
 
 /** @param stream where to draw, or null for no bar at all */
-export function showProgress(stream: NodeJS.WriteStream | null): Progress {
+export function showProgress(stream: NodeJS.WriteStream | null, what = "frames"): Progress {
   if (stream?.isTTY !== true) return { update: () => {}, end: () => {} };
   const bar = new SingleBar({
     stream,
-    format: "frames {bar} {value}/{total}",
+    format: `${what} {bar} {value}/{total}`,
     barsize: 30,
     barCompleteChar: "█",
     barIncompleteChar: "·",

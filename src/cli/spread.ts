@@ -1,5 +1,6 @@
-import { analyse } from "../outcome/analyse.ts";
+import { type Examined, examine } from "../outcome/analyse.ts";
 import type { Analysis, AnalysisOptions } from "../outcome/analysis.ts";
+import { closurePlan } from "../outcome/closure.ts";
 import { hireArtist } from "../report/draw-aside.ts";
 import { renderTerminal } from "../report/terminal.ts";
 import { writeReports } from "../report/write.ts";
@@ -7,6 +8,7 @@ import { discardUnfinished } from "../report/write-whole.ts";
 import { openStack } from "../stack/open.ts";
 import type { Stack } from "../stack/stack.ts";
 import { seedFrom, windowFrom } from "./arguments.ts";
+import { runClosure, stacksFrom } from "./closure.ts";
 import { checkFolder, writing } from "./folder.ts";
 import { uninterrupted } from "./interrupt.ts";
 import { showProgress } from "./progress.ts";
@@ -18,6 +20,7 @@ export interface SpreadOptions extends SettingOptions {
   readonly from?: string;
   readonly to?: string;
   readonly field?: boolean;
+  readonly closure?: string;
   readonly seed?: string;
   readonly json?: boolean;
   readonly quiet?: boolean;
@@ -26,6 +29,7 @@ export interface SpreadOptions extends SettingOptions {
 /** `gleamwalk spread`: one recording to D, τ, L and μ, with files to keep and a summary to read. */
 export async function spread(file: string, options: SpreadOptions): Promise<ExitCode> {
   const seed = seedFrom(options.seed);
+  const stacks = stacksFrom(options.closure);
   const field = options.field === undefined ? "auto" : options.field ? "always" : "never";
   const wanted = {
     ...windowFrom(options.from, options.to),
@@ -39,8 +43,14 @@ export async function spread(file: string, options: SpreadOptions): Promise<Exit
   try {
     const checksum = artist.checksum(file);
     const stack = await openStack(file, { ...openOptions(options), sha256: "" });
-    const analysis = analyseWatched(stack, wanted, options.quiet === true ? null : process.stderr);
+    const stream = options.quiet === true ? null : process.stderr;
+    const examined = analyseWatched(stack, wanted, stream);
+    const { analysis } = examined;
     analysis.result.input.sha256 = await checksum;
+    if (stacks !== undefined) {
+      const plan = closurePlan(examined, wanted);
+      analysis.result.closure = await runClosure(plan, stacks, showProgress(stream, "stacks"));
+    }
     await writing(folder, "-o", () =>
       uninterrupted(() => writeReports(analysis, folder, artist.draw), discardUnfinished),
     );
@@ -56,10 +66,10 @@ function report(analysis: Analysis, folder: string, options: SpreadOptions): Exi
   return analysis.result.verdict.level === "unsound" ? ExitCode.unsound : ExitCode.done;
 }
 
-function analyseWatched(stack: Stack, wanted: AnalysisOptions, stream: NodeJS.WriteStream | null): Analysis {
+function analyseWatched(stack: Stack, wanted: AnalysisOptions, stream: NodeJS.WriteStream | null): Examined {
   const progress = showProgress(stream);
   try {
-    return analyse(stack, { ...wanted, onProgress: progress.update });
+    return examine(stack, { ...wanted, onProgress: progress.update });
   } finally {
     progress.end();
   }

@@ -4,6 +4,7 @@ import type { Stack } from "../stack/stack.ts";
 import type { LawFit, TransportLaw } from "../transport/laws.ts";
 import { version } from "../version.ts";
 import type { Analysis, AnalysisOptions, CurvePoint } from "./analysis.ts";
+import { lightOfWhole, lightOfWidths } from "./closure-light.ts";
 import { densityOf } from "./density.ts";
 import { gatherEvidence } from "./evidence.ts";
 import { fieldBlock } from "./field-block.ts";
@@ -18,7 +19,7 @@ import type { DecayLaw, Law, Result } from "./result.ts";
 import { frameRows, spotsOf } from "./rows.ts";
 import { tensorOf } from "./tensor.ts";
 import { judge } from "./verdict.ts";
-import { fitWholeStack } from "./whole-stack.ts";
+import { fitWholeStack, type WholeStack } from "./whole-stack.ts";
 
 const DEFAULT_SEED = 1;
 
@@ -28,6 +29,18 @@ const DEFAULT_SEED = 1;
  * @throws InputFault where the stack cannot be analysed: no spot, too few frames in the window
  */
 export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
+  return examine(stack, options).analysis;
+}
+
+/** An analysis with what its models say of the light. */
+export interface Examined {
+  readonly analysis: Analysis;
+  /** Mean light of every frame by the models that the headline comes from, photons per pixel; made when asked for. */
+  readonly meanLight: () => Float64Array[];
+}
+
+/** As `analyse`, keeping the fitted models. */
+export function examine(stack: Stack, options: AnalysisOptions = {}): Examined {
   const started = new Date();
   const reading = readRecording(stack, options);
   const joint = joinFits(reading);
@@ -35,7 +48,7 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
   const seed = options.seed ?? DEFAULT_SEED;
   const widths = quantitiesOf(reading, joint, seed);
   const plain = judge({ reading, joint, evidence, quantities: widths });
-  const { outcome, verdict, field } = withField(reading, joint, widths, plain, options, seed);
+  const { outcome, verdict, field, whole } = withField(reading, joint, widths, plain, options, seed);
   const { acquisition } = stack;
   const window = reading.widths.map((width) => acquisition.time.delays[width.frame]!);
   const { file, sha256, shape, axes } = stack.source;
@@ -63,6 +76,7 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
     decay: decayBlock(reading, joint),
     density: densityOf(acquisition, outcome.quantities.mobility),
     field,
+    closure: null,
     budget: outcome.budget,
     frames: frameRows(reading),
     provenance: {
@@ -72,13 +86,18 @@ export function analyse(stack: Stack, options: AnalysisOptions = {}): Analysis {
       seconds: (Date.now() - started.getTime()) / 1000,
     },
   };
-  return {
+  const analysis: Analysis = {
     result,
     stack,
     spots: spotsOf(reading),
     spreadCurve: spreadCurve(reading, joint),
     lightCurve: lightCurve(reading, joint),
     lightResiduals: lightResiduals(reading),
+  };
+  const adopted = field?.adopted === true ? whole : null;
+  return {
+    analysis,
+    meanLight: () => (adopted === null ? lightOfWidths(reading) : lightOfWhole(reading, adopted)),
   };
 }
 
@@ -90,11 +109,16 @@ function withField(
   plain: Result["verdict"],
   options: AnalysisOptions,
   seed: number,
-): { outcome: Quantities; verdict: Result["verdict"]; field: Result["field"] } {
+): {
+  outcome: Quantities;
+  verdict: Result["verdict"];
+  field: Result["field"];
+  whole: WholeStack | null;
+} {
   const { field: wish = "auto" } = options;
   const pays = wish === "always" || (wish === "auto" && isMisled(plain));
   const whole = pays ? fitWholeStack(reading, joint) : null;
-  if (whole === null) return { outcome: widths, verdict: plain, field: null };
+  if (whole === null) return { outcome: widths, verdict: plain, field: null, whole };
   const field = fieldQuantities(whole.data, whole.fits);
   const adopted = isAdopted(plain, whole);
   const { acquisition } = reading.stack;
@@ -102,6 +126,7 @@ function withField(
     outcome: adopted ? quantitiesOfField(field, acquisition, seed) : widths,
     verdict: judgeField(plain, whole, field, widths),
     field: fieldBlock(whole, field, acquisition, adopted),
+    whole,
   };
 }
 

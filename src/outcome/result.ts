@@ -26,6 +26,20 @@ const candidateName = z.enum(["diffusion", "annihilation", "capture", "annihilat
 
 const withU = z.strictObject({ value: number, u: number.min(0) });
 
+const closureOf = z
+  .strictObject({
+    truth: number.describe("the fitted model's own value, in the quantity's unit"),
+    bias: number.nullable().describe("mean of estimate − truth, in the quantity's unit"),
+    mean_pull: number.nullable().describe("mean of (estimate − truth)/u"),
+    u_mean_pull: number.min(0).nullable().describe("its counting error"),
+    spread: number.min(0).nullable().describe("standard deviation of the pulls"),
+    coverage: number.min(0).max(1).describe("share of the 95 % intervals that hold the truth"),
+    u_coverage: number.min(0).describe("its counting error at 0.95"),
+    given: number.int().describe("stacks that gave the quantity"),
+    upper_limits: number.int().describe("stacks that gave an upper limit only; they have no pull"),
+  })
+  .nullable();
+
 export const lawSchema = z.strictObject({
   formula: z.string(),
   parameters: z.record(z.string(), z.strictObject({ value: number, u: number.min(0), unit: z.string() })),
@@ -165,6 +179,21 @@ export const resultSchema = z.strictObject({
     })
     .nullable()
     .describe("the whole-stack fit of the reaction–diffusion model, when made"),
+  closure: z
+    .strictObject({
+      stacks: number.int().describe("drawn and analysed"),
+      asked: number.int(),
+      failed: number.int().describe("of the stacks, those that could not be analysed"),
+      seed: number.int(),
+      quantities: z.strictObject({
+        diffusion_coefficient: closureOf,
+        lifetime: closureOf,
+        diffusion_length: closureOf,
+      }),
+    })
+    .nullable()
+    .default(null)
+    .describe("bias and coverage over stacks drawn from the fitted model, when asked for"),
   budget: z.array(
     z.strictObject({
       quantity: z.enum(["diffusion_coefficient", "diffusion_length", "mobility"]),

@@ -1,5 +1,6 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
+import { closureText } from "./closure-text.ts";
 import { escapeText as e } from "./figure-parts.ts";
 import type { Figures } from "./figures.ts";
 import { methodsText } from "./methods.ts";
@@ -7,6 +8,7 @@ import { PAGE_STYLE } from "./page-style.ts";
 import {
   budgetTables,
   candidateTables,
+  closureTable,
   densityTable,
   framesTable,
   lawTables,
@@ -51,6 +53,14 @@ export function renderReport(analysis: Analysis, figures: Figures, viewer: Viewe
       `<p>Standard uncertainties (k = 1). Type A comes from counting statistics through the fits, type B from what is known about pixel size, time base and temperature.</p>`,
       ...budgetTables(result),
     ]),
+    ...(result.closure === null
+      ? []
+      : [
+          ruled("Closure", [
+            `<p>${e(closureText(result.closure))}. Each was analysed as the recording was, calibrations taken as exact.</p>`,
+            closureTable(result.closure),
+          ]),
+        ]),
     ruled("Numbers in other forms", [`<div class="tables">${otherForms(result).join("\n")}</div>`]),
     ...(result.field === null ? [] : [ruled("The whole stack at once", candidateTables(result))]),
     ruled("Laws tried", lawTables(result)),

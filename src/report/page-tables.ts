@@ -110,6 +110,32 @@ export function budgetTables(result: Result): string[] {
 }
 
 /** The candidates of the whole-stack fit side by side; empty where it was not made. */
+/** Bias and coverage over stacks drawn from the fitted model. */
+export function closureTable({ quantities }: NonNullable<Result["closure"]>): string {
+  const rows = (["diffusion_coefficient", "lifetime", "diffusion_length"] as const).flatMap((name) => {
+    const found = quantities[name];
+    if (found === null) return [];
+    const { truth, bias, mean_pull, u_mean_pull, spread, coverage, u_coverage, upper_limits } = found;
+    return {
+      cells: [
+        `${e(QUANTITY[name].name)} (${unitText(CLOSURE_UNIT[name])})`,
+        e(plain(truth, 4)),
+        bias === null ? "–" : e(plain(bias, 2)),
+        mean_pull === null || u_mean_pull === null ? "–" : e(concise(mean_pull, u_mean_pull)),
+        spread === null ? "–" : spread.toFixed(2),
+        e(`${(100 * coverage).toFixed(1)} % ± ${(100 * u_coverage).toFixed(1)} %`),
+        String(upper_limits),
+      ],
+    };
+  });
+  const columns = ["Truth", "Bias", "Bias / u", "Spread / u", "Coverage of 95 %", "Upper limits"];
+  return table([{ text: "Quantity" }, ...columns.map((text) => ({ text, numeric: true }))], rows, {
+    caption: "Stacks drawn from the fitted model",
+  });
+}
+
+const CLOSURE_UNIT = { diffusion_coefficient: "cm^2/s", lifetime: "ns", diffusion_length: "µm" } as const;
+
 export function candidateTables({ field }: Result): string[] {
   if (field === null) return [];
   const show = (parameters: Candidate["parameters"], names: readonly string[], factor = 1): string => {

@@ -1,5 +1,6 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
+import { closureTexts } from "./closure-text.ts";
 import { concise, plain } from "./notation.ts";
 import {
   CANDIDATE,
@@ -99,6 +100,9 @@ function howFound(result: Result, width: number): string[] {
   }
   if (decay !== null) lines.push(["Law of decay", decayText(decay)]);
   if (result.field !== null) lines.push(["Whole stack", fieldText(result.field)]);
+  for (const [i, text] of (result.closure === null ? [] : closureTexts(result.closure)).entries()) {
+    lines.push([i === 0 ? "Closure" : "", text]);
+  }
   lines.push(["Set aside", setAsideText(frames)]);
   return lines.flatMap(([label, text]) => {
     const [first = "", ...rest] = wrap(text, width - LABEL - 2, "");

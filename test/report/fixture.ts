@@ -356,6 +356,7 @@ function makeResult(name: Case, stack: Stack, rows: FrameRow[]): Result {
     },
     density: null,
     field: null,
+    closure: null,
     budget: budget(),
     frames: rows,
     provenance: {
