@@ -73,7 +73,7 @@ function lineValue(line: Reading["line"]): { value(t: number): number } {
 /** Frames with at least this much light over its standard deviation say something about shape. */
 const BRIGHT = 8;
 /** A long stack is asked in this many groups of neighbouring frames, added up: hardly any width is mixed in one. */
-const GROUPS = 16;
+const GROUPS = 32;
 
 function shapeOf(reading: Reading): Sign {
   const { frames, widths, light } = reading;
@@ -91,20 +91,25 @@ function shapeOf(reading: Reading): Sign {
     const one = shapeScore(frames.kind, patch, spot, noise);
     score += one.score;
     information += one.information;
-    mixed += one.information * gateMixing(reading, group[0]!);
+    mixed += one.information * mixing(reading, group);
   }
   if (information === 0) return { value: 0, u: Number.MAX_VALUE };
   return { value: (score - mixed) / information, u: 1 / Math.sqrt(information) };
 }
 
 /**
- * q that the gate alone brings: while it is open the spot spreads, and a mixture of widths is peaked by
- * var(σ²)/σ⁴ = (2D·gate)²/(12σ⁴) on a map; on a trace 3/√24 of that (fourth moment of a mixture of Gaussians, derived).
+ * q that widths mixed in one picture bring by themselves: the spot spreads while the gate is open and from frame to frame
+ * of a group. A mixture of Gaussians is peaked by var(σ²)/⟨σ²⟩² on a map, 3/√24 of that on a trace (fourth moment of a
+ * mixture, derived); a gate of width w adds (2D·w)²/12 to the variance of σ².
  */
-function gateMixing({ stack, frames, line, models }: Reading, frame: number): number {
-  const { gate } = stack.acquisition.time;
-  const spread = 2 * meanDiffusion(line).value * gate;
-  const relative = spread ** 2 / 12 / perAxis({ variance: models.variance(frame) }) ** 2;
+function mixing({ stack, frames, line, models, light }: Reading, group: readonly number[]): number {
+  const spread = 2 * meanDiffusion(line).value * stack.acquisition.time.gate;
+  const variances = group.map((i) => perAxis({ variance: models.variance(i) }));
+  const weights = group.map((i) => Math.max(light.value[i]!, 0));
+  const total = weights.reduce((sum, w) => sum + w, 0);
+  const mean = variances.reduce((sum, v, k) => sum + v * weights[k]!, 0) / total;
+  const between = variances.reduce((sum, v, k) => sum + (v - mean) ** 2 * weights[k]!, 0) / total;
+  const relative = (between + spread ** 2 / 12) / mean ** 2;
   return frames.kind === "map" ? relative : (3 / Math.sqrt(24)) * relative;
 }
 

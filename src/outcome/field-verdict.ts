@@ -25,9 +25,14 @@ export function isMisled(verdict: Result["verdict"]): boolean {
   );
 }
 
-/** Whether the headline quantities come from the whole-stack fit: widths misled, and a model describes the stack. */
+/**
+ * Whether the headline quantities come from the whole-stack fit: widths misled, and a model describes the stack that says
+ * why. Plain diffusion is no reason, unless it is the earlier pulses that it sums.
+ */
 export function isAdopted(verdict: Result["verdict"], whole: WholeStack): boolean {
-  return isMisled(verdict) && describes(whole.fits.preferred);
+  const { preferred } = whole.fits;
+  const explains = preferred.candidate.name !== "diffusion" || whole.data.period !== null;
+  return isMisled(verdict) && explains && describes(preferred);
 }
 
 /** The verdict with what the whole-stack fit found. */
