@@ -38,7 +38,8 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const data = stackDataOf(reading);
   const annihilation = reading.decays?.fits.annihilation ?? null;
   const hint = annihilation?.converged ? annihilation.parameters[annihilation.names.indexOf("k_n0")]! : null;
-  return { data, fits: fitCandidates(data, symmetryOf(reading), startOf(reading, joint, data), hint) };
+  const fits = fitCandidates(data, symmetryOf(reading), startOf(reading, joint, data), hint);
+  return fits === null ? null : { data, fits };
 }
 
 /** The frames that a model of the light must describe: all but those set aside for what they are. */

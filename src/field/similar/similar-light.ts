@@ -42,7 +42,7 @@ export function resolutionOf(problem: SimilarProblem): Resolution {
   const line = new Timeline(rates, endOf(problem));
   const meeting = line.decayed(line.end);
   const sharp = rates.annihilation / (Math.max(diffusion[1], 0) + 0.02 / meeting);
-  const flatness = meeting > 0 ? Math.log1p(sharp) : 0;
+  const flatness = meeting > 0 ? Math.log1p(Math.max(sharp, 0)) : 0;
   const modes = 14 + 5 * flatness + 6 * Math.max(flatness - 3.5, 0);
   return {
     modes: Math.min(4 * Math.ceil(modes / 4), 72),

@@ -3,7 +3,7 @@ import type { StackOptimum } from "./fit-stack.ts";
 import { fitStack } from "./fit-stack.ts";
 import type { Goodness } from "./goodness.ts";
 import { goodnessOf } from "./goodness.ts";
-import type { Candidate, Symmetry, Values } from "./parameters.ts";
+import type { Candidate, Name, Symmetry, Values } from "./parameters.ts";
 import { CANDIDATES, namesOf, valuesOf } from "./parameters.ts";
 import type { StackData } from "./stack-data.ts";
 
@@ -32,6 +32,7 @@ const PRICE = 4;
  *
  * Caught excitons are taken to shine like free ones (ε = 1): the light tells λ = 1/τ + c and ε·c, not the three apart.
  *
+ * @returns null where no candidate can be fitted at all
  * @param start values of plain diffusion, from widths and decay
  * @param hint k·n₀ by the decay of the light, 1/ns, where it gives one
  */
@@ -40,13 +41,14 @@ export function fitCandidates(
   symmetry: Symmetry,
   start: Values,
   hint: number | null,
-): StackFits {
+): StackFits | null {
   const found: Omit<CandidateFit, "weight">[] = [];
   const pixels = data.frames.reduce((sum, { patch }) => sum + patch.data.length, 0);
   for (const candidate of CANDIDATES) {
     const names = namesOf(data.kind, candidate, symmetry);
     const starts = startsOf(candidate, start, hint, found);
-    const optima = starts.map((values) => fitStack(data, names, values));
+    const optima = starts.flatMap((values) => tryFit(data, names, values) ?? []);
+    if (optima.length === 0) continue;
     const best = optima.reduce((a, b) => (b.deviance < a.deviance ? b : a));
     found.push({
       ...best,
@@ -55,10 +57,21 @@ export function fitCandidates(
       aicc: correctedAkaike(best.deviance, names.length, pixels),
     });
   }
+  if (found.length === 0) return null;
   const usable = found.filter((fit) => fit.converged);
   const weights = akaikeWeights(usable.map((fit) => fit.aicc));
   const fits = found.map((fit) => ({ ...fit, weight: weights[usable.indexOf(fit)] ?? 0 }));
   return { fits, preferred: prefer(fits), symmetry };
+}
+
+/** Null where no light follows from the start or from where the fit is led: that candidate is no candidate. */
+function tryFit(data: StackData, names: readonly Name[], start: Values): StackOptimum | null {
+  try {
+    return fitStack(data, names, start);
+  } catch (error) {
+    if (error instanceof RangeError) return null;
+    throw error;
+  }
 }
 
 function prefer(fits: readonly CandidateFit[]): CandidateFit {
