@@ -65,8 +65,8 @@ export interface LeastSquaresFit {
  *
  * Every Levenberg–Marquardt step, that is the damped normal equations (JᵀJ + λ·1)·u = Jᵀr and the clamping to the
  * bounds, is made by `ml-levenberg-marquardt`, one step a call. What that library lacks is added around it:
- * - parameters scaled by the largest norm so far of their column of J, so that λ has no unit (Moré, Lecture Notes in
- *   Mathematics 630 (1978) 105);
+ * - parameters scaled by the largest norm so far of their column of J, so that λ has no unit (Moré, Lect. Notes
+ *   Math. 630 (1978) 105);
  * - a step is taken only where χ² falls, and λ follows the ratio of the fall to the predicted one (Nielsen, Technical
  *   University of Denmark, report IMM-REP-1999-05);
  * - a stop that knows no units: the relative offset of Bates and Watts, Technometrics 23 (1981) 179, the length of the
