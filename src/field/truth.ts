@@ -1,10 +1,9 @@
 import type { Covariance } from "../frame/spot.ts";
+import { boltzmann, elementaryCharge } from "../numerics/constants.ts";
 import type { FrameLight } from "./recording.ts";
 import type { Scenario } from "./scenario.ts";
 import { movingTime } from "./travel.ts";
 
-/** e/k_B, K/V, exact: 1.602176634e-19 C / 1.380649e-23 J/K (SI brochure, 9th edition). */
-const ELEMENTARY_CHARGE_OVER_BOLTZMANN = 1.602176634e-19 / 1.380649e-23;
 /** cm²/s in one µm²/ns. */
 const CM2_PER_S = 10;
 
@@ -73,7 +72,7 @@ export function truthOf(scenario: Scenario, light: readonly FrameLight[]): Truth
     lifetime_ns: medium.lifetime,
     diffusion_length_um: Math.sqrt(d * moving),
     mobility_cm2_per_v_s:
-      temperature === null ? null : (d * CM2_PER_S * ELEMENTARY_CHARGE_OVER_BOLTZMANN) / temperature,
+      temperature === null ? null : (d * CM2_PER_S * (elementaryCharge / boltzmann)) / temperature,
     annihilation_k_n0_per_ns: scenario.annihilationRate,
     capture_per_ns: medium.capture,
     trap_light: caught ? medium.trapLight : null,

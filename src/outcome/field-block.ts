@@ -8,8 +8,6 @@ import type { WholeStack } from "./whole-stack.ts";
 
 /** Correlations from here on are shown: the two parameters can hardly be told apart. */
 const STRONG = 0.8;
-/** µm²/ns of k, times n in µm⁻², to cm²/s. */
-const CM2_PER_S_OF_K = CM2_PER_S;
 
 /** The result's `field` block. */
 export function fieldBlock(
@@ -41,9 +39,9 @@ export function fieldBlock(
       rate === null || density === null
         ? null
         : {
-            value: (CM2_PER_S_OF_K * rate.value) / density.value,
+            value: (CM2_PER_S * rate.value) / density.value,
             u:
-              ((CM2_PER_S_OF_K * rate.value) / density.value) *
+              ((CM2_PER_S * rate.value) / density.value) *
               Math.hypot(rate.u / rate.value, density.u / density.value),
           },
     capture: parameterOf(preferred, "capture", field.birge),

@@ -2,6 +2,7 @@ import type { Scenario } from "../field/scenario.ts";
 import { expectation } from "../field/synthesise.ts";
 import { InputFault } from "../stack/fault.ts";
 import { type Expected, widthsPrecision } from "./precision.ts";
+import { CM2_PER_S } from "./quantities.ts";
 import { type StackPrecision, stackPrecision } from "./stack-precision.ts";
 
 /** How precise a planned recording will be, and what would halve the error of D. */
@@ -48,8 +49,6 @@ export interface Remedy {
   readonly best: { readonly factor: number; readonly error_ratio: number };
 }
 
-/** cm²/s in one µm²/ns. */
-const CM2_PER_S = 10;
 /** Factors tried one after another; between the two around the aim it is halved further. */
 const TRIED: Readonly<Record<RemedyName, readonly number[]>> = {
   light: [2, 4, 8, 16, 64, 1024],

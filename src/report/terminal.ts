@@ -123,7 +123,6 @@ export function spreadText(transport: Result["transport"]): string {
   return `${TRANSPORT_LAW[transport.preferred]}${fit}${runs}${birgeText(transport.birge_factor)}`;
 }
 
-/** The same for the decay. */
 /** The whole-stack fit in one line. */
 export function fieldText(field: NonNullable<Result["field"]>): string {
   const rates = [
@@ -134,6 +133,7 @@ export function fieldText(field: NonNullable<Result["field"]>): string {
   return `${CANDIDATE[field.preferred]}; ${[d, ...rates].join(", ")}; p = ${probability(field.p_value)}`;
 }
 
+/** The law of decay in one line, as the law of spread. */
 export function decayText(decay: NonNullable<Result["decay"]>): string {
   const candidates = Object.values(decay.models).filter((law) => law !== null).length;
   return `${DECAY_LAW[decay.preferred]}${fitText(decay.models[decay.preferred] ?? null, candidates)}${birgeText(decay.birge_factor)}`;
