@@ -1,7 +1,8 @@
 import type { CandidateFit } from "../field/stack-fit/candidates.ts";
 import { type Name, UNITS } from "../field/stack-fit/parameters.ts";
-import type { Acquisition } from "../stack/acquisition.ts";
-import type { FieldQuantities } from "./field-quantities.ts";
+import type { Acquisition, Measured } from "../stack/acquisition.ts";
+import type { Ranged } from "./field-intervals.ts";
+import { birgeOf, type FieldQuantities } from "./field-quantities.ts";
 import { CM2_PER_S } from "./quantities.ts";
 import type { Result } from "./result.ts";
 import type { WholeStack } from "./whole-stack.ts";
@@ -18,34 +19,38 @@ export function fieldBlock(
 ): Result["field"] {
   const { preferred } = fits;
   const { goodness } = preferred;
-  const scaled = ({ value, u }: { value: number; u: number }, factor: number) => ({
-    value: factor * value,
-    u: factor * u,
-  });
   const length = Math.sqrt(Math.max(field.length2.value, 0));
-  const rate = parameterOf(preferred, "k_n0", field.birge);
+  const determined = preferred.converged;
+  const ranged = (name: Ranged, { value, u }: { value: number; u: number }, factor = 1): RangedValue => {
+    const { ends, profiled } = field.ranges.get(name) ?? { ends: [null, null], profiled: false };
+    return {
+      value: factor * value,
+      u: determined ? factor * u : null,
+      interval95: [scaled(ends[0], factor), scaled(ends[1], factor)],
+      interval_from: profiled ? "profile" : "covariance",
+    };
+  };
+  const free = (name: Name & Ranged): RangedValue | null => {
+    const i = preferred.names.indexOf(name);
+    if (i < 0) return null;
+    const u = uncertaintyOf(preferred, i) ?? 0;
+    return ranged(name, { value: preferred.parameters[i]!, u });
+  };
+  const rate = free("k_n0");
   const { density } = acquisition.sample;
   return {
     preferred: preferred.candidate.name,
     adopted,
-    D: scaled(field.diffusion, CM2_PER_S),
-    tau: { ...field.lifetime },
+    D: ranged("D", field.diffusion, CM2_PER_S),
+    tau: ranged("tau", field.lifetime),
     diffusion_length: {
       value: length,
-      u: length > 0 ? field.length2.u / (2 * length) : Math.sqrt(field.length2.u),
+      u: determined ? (length > 0 ? field.length2.u / (2 * length) : Math.sqrt(field.length2.u)) : null,
     },
     k_n0: rate,
-    k:
-      rate === null || density === null
-        ? null
-        : {
-            value: (CM2_PER_S * rate.value) / density.value,
-            u:
-              ((CM2_PER_S * rate.value) / density.value) *
-              Math.hypot(rate.u / rate.value, density.u / density.value),
-          },
-    capture: parameterOf(preferred, "capture", field.birge),
-    trap_lifetime: parameterOf(preferred, "trap_lifetime", field.birge),
+    k: rate === null || density === null ? null : perDensity(rate, density),
+    capture: free("capture"),
+    trap_lifetime: free("trap_lifetime"),
     chi2: goodness.chi2,
     degrees_of_freedom: goodness.degreesOfFreedom,
     p_value: goodness.pValue,
@@ -67,15 +72,26 @@ export function fieldBlock(
   };
 }
 
-/** Null where the data do not determine the fit's parameters. */
-function uncertaintyOf(fit: CandidateFit, i: number): number | null {
-  const variance = fit.covariance[i * fit.names.length + i]!;
-  return fit.converged && variance >= 0 && Number.isFinite(variance) ? Math.sqrt(variance) : null;
+type RangedValue = NonNullable<Result["field"]>["D"];
+
+function scaled(value: number | null, factor: number): number | null {
+  return value === null ? null : factor * value;
 }
 
-function parameterOf(fit: CandidateFit, name: Name, birge: number): { value: number; u: number } | null {
-  const i = fit.names.indexOf(name);
-  return i < 0 ? null : { value: fit.parameters[i]!, u: birge * (uncertaintyOf(fit, i) ?? 0) };
+/** k = k·n₀/n₀ in cm²/s; n₀ in excitons per µm². */
+function perDensity(rate: RangedValue, density: Measured): NonNullable<Result["field"]>["k"] {
+  const factor = CM2_PER_S / density.value;
+  return {
+    value: factor * rate.value,
+    u: rate.u === null ? null : factor * Math.hypot(rate.u, (rate.value * density.u) / density.value),
+  };
+}
+
+/** With the fit's own Birge factor; null where the data do not determine the fit's parameters. */
+function uncertaintyOf(fit: CandidateFit, i: number): number | null {
+  const variance = fit.covariance[i * fit.names.length + i]!;
+  if (!fit.converged || !(variance >= 0 && Number.isFinite(variance))) return null;
+  return birgeOf(fit) * Math.sqrt(variance);
 }
 
 function correlationsOf({

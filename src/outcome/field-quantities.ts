@@ -5,6 +5,7 @@ import { naturalSize } from "../field/stack-fit/score-stack.ts";
 import type { StackData } from "../field/stack-fit/stack-data.ts";
 import { birgeFactor } from "../numerics/model-choice.ts";
 import type { Input } from "../numerics/propagate.ts";
+import { fieldIntervals, type Range, type Ranged } from "./field-intervals.ts";
 import { quadratic } from "./joint.ts";
 
 /** What the whole-stack fit says of the excitons themselves; µm and ns, counting uncertainties. */
@@ -16,6 +17,7 @@ export interface FieldQuantities {
   /** ½⟨x²⟩ where excitons end, µm². */
   readonly length2: Input;
   readonly birge: number;
+  readonly ranges: ReadonlyMap<Ranged, Range>;
 }
 
 /** Below this probability of its χ² a whole-stack model does not describe the recording. */
@@ -25,9 +27,14 @@ export function describes(fit: CandidateFit): boolean {
   return fit.converged && fit.goodness.pValue > FITS;
 }
 
+/** The factor on every u of a whole-stack fit whose rings scatter more than counting does. */
+export function birgeOf({ goodness }: CandidateFit): number {
+  return birgeFactor(goodness.chi2, goodness.degreesOfFreedom);
+}
+
 export function fieldQuantities(data: StackData, { preferred }: StackFits): FieldQuantities {
-  const { names, parameters, covariance, goodness } = preferred;
-  const birge = birgeFactor(goodness.chi2, goodness.degreesOfFreedom);
+  const { names, parameters, covariance } = preferred;
+  const birge = birgeOf(preferred);
   const uOf = (gradient: readonly number[]): number =>
     birge * Math.sqrt(Math.max(quadratic(gradient, covariance), 0));
   const d = meanDiffusionOf(names, parameters);
@@ -42,6 +49,7 @@ export function fieldQuantities(data: StackData, { preferred }: StackFits): Fiel
       u: uOf(travelSlopes(data, names, parameters)),
     },
     birge,
+    ranges: fieldIntervals(data, preferred, birge),
   };
 }
 

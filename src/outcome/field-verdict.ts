@@ -1,9 +1,10 @@
 import type { CandidateFit } from "../field/stack-fit/candidates.ts";
 import type { FieldQuantities } from "./field-quantities.ts";
-import { describes } from "./field-quantities.ts";
+import { birgeOf, describes } from "./field-quantities.ts";
 import type { Quantities } from "./quantities.ts";
 import { CM2_PER_S } from "./quantities.ts";
 import type { Result } from "./result.ts";
+import { notToldApart } from "./told-apart.ts";
 import { levelOf, type Reason, reason } from "./verdict-reason.ts";
 import type { WholeStack } from "./whole-stack.ts";
 
@@ -43,13 +44,14 @@ export function judgeField(
   widths: Quantities,
 ): Result["verdict"] {
   const { preferred } = whole.fits;
+  const open = notToldApart(preferred, field.ranges);
   const line = widths.quantities.diffusion_coefficient;
   const d = { value: CM2_PER_S * field.diffusion.value, u: CM2_PER_S * field.diffusion.u };
   if (isAdopted(plain, whole)) {
     const kept = plain.reasons
       .filter(({ code }) => !ANSWERED.includes(code))
       .map((each): Reason => (each.code === "earlier-pulses-glow" ? { ...each, level: "note" } : each));
-    return levelOf([wouldMislead(preferred, line), ...confirmed(preferred), ...kept]);
+    return levelOf([wouldMislead(preferred, line), ...confirmed(preferred), ...kept, ...open]);
   }
   if (!describes(preferred)) {
     return levelOf([
@@ -63,7 +65,7 @@ export function judgeField(
     ]);
   }
   const apart = Math.abs(d.value - line.value) / Math.hypot(d.u, line.u_statistical);
-  if (apart < 4) return plain;
+  if (apart < 4) return levelOf([...plain.reasons, ...open]);
   return levelOf([
     reason(
       "caution",
@@ -72,6 +74,7 @@ export function judgeField(
       "look at the candidates in the report; quote neither number before the difference is understood",
     ),
     ...plain.reasons,
+    ...open,
   ]);
 }
 
@@ -113,7 +116,7 @@ function confirmed(fit: CandidateFit): Reason[] {
 
 function rate(fit: CandidateFit, name: "k_n0" | "capture"): string {
   const i = fit.names.indexOf(name);
-  const u = Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
+  const u = birgeOf(fit) * Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
   return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)} /ns`;
 }
 

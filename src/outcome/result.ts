@@ -25,6 +25,18 @@ export const quantitySchema = z
 const candidateName = z.enum(["diffusion", "annihilation", "capture", "annihilation_and_capture"]);
 
 const withU = z.strictObject({ value: number, u: number.min(0) });
+const fitted = z.strictObject({
+  value: number,
+  u: number.min(0).nullable().describe("null where the data do not determine the fit"),
+});
+const ranged = fitted.extend({
+  interval95: z
+    .tuple([number.nullable(), number.nullable()])
+    .describe("null for an end that the data do not set: a rate that may be zero, a lifetime without limit"),
+  interval_from: z
+    .enum(["covariance", "profile"])
+    .describe("profile: of the likelihood, where it is far from normal"),
+});
 
 const closureOf = z
   .strictObject({
@@ -149,13 +161,13 @@ export const resultSchema = z.strictObject({
     .strictObject({
       preferred: candidateName,
       adopted: z.boolean().describe("true where the headline quantities come from this fit"),
-      D: withU.describe("cm²/s"),
-      tau: withU.describe("ns; of free excitons"),
-      diffusion_length: withU.describe("µm; where free excitons end or are caught"),
-      k_n0: withU.nullable().describe("1/ns; annihilation at the centre right after the pulse"),
-      k: withU.nullable().describe("cm²/s; where a density is stated"),
-      capture: withU.nullable().describe("1/ns"),
-      trap_lifetime: withU.nullable().describe("ns"),
+      D: ranged.describe("cm²/s"),
+      tau: ranged.describe("ns; of free excitons"),
+      diffusion_length: fitted.describe("µm; where free excitons end or are caught"),
+      k_n0: ranged.nullable().describe("1/ns; annihilation at the centre right after the pulse"),
+      k: fitted.nullable().describe("cm²/s; where a density is stated"),
+      capture: ranged.nullable().describe("1/ns"),
+      trap_lifetime: ranged.nullable().describe("ns"),
       chi2: number,
       degrees_of_freedom: z.number().int(),
       p_value: number,

@@ -1,6 +1,7 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
 import { concise, plain, symbols } from "./notation.ts";
+import { rangedText } from "./ranged-text.ts";
 import {
   baseName,
   CANDIDATE,
@@ -107,18 +108,12 @@ function fieldMethod({ field }: Result): string {
   const rates = [
     ...(field.k_n0 === null
       ? []
-      : [`k·n₀ = ${concise(field.k_n0.value, field.k_n0.u)} /ns at the centre right after the pulse`]),
+      : [`k·n₀ = ${rangedText(field.k_n0, "/ns")} at the centre right after the pulse`]),
     ...(field.capture === null
       ? []
-      : [
-          `capture at ${concise(field.capture.value, field.capture.u)} /ns, trapped excitons taken to shine like free ones`,
-        ]),
+      : [`capture at ${rangedText(field.capture, "/ns")}, trapped excitons taken to shine like free ones`]),
   ];
-  const found = [
-    `D = ${concise(field.D.value, field.D.u)} cm²/s`,
-    `τ = ${concise(field.tau.value, field.tau.u)} ns`,
-    ...rates,
-  ];
+  const found = [`D = ${rangedText(field.D, "cm²/s")}`, `τ = ${rangedText(field.tau, "ns")}`, ...rates];
   return (
     "The reaction–diffusion model ∂n/∂t = ∇·D∇n − n/τ − k n² − c n for free and ∂m/∂t = c n − m/τ_m for trapped excitons was fitted to all pixels of all frames at once by maximum likelihood (damped Fisher scoring), " +
     `with its terms chosen by corrected Akaike weight and goodness of fit: ${CANDIDATE[field.preferred]} (${found.join(", ")}; χ²/dof = ${(field.chi2 / field.degrees_of_freedom).toFixed(2)} over rings of groups of frames, p ${equalsText(field.p_value)}). ` +

@@ -2,6 +2,7 @@ import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
 import { closureTexts } from "./closure-text.ts";
 import { concise, plain } from "./notation.ts";
+import { rangedText } from "./ranged-text.ts";
 import {
   CANDIDATE,
   counted,
@@ -126,10 +127,10 @@ export function spreadText(transport: Result["transport"]): string {
 /** The whole-stack fit in one line. */
 export function fieldText(field: NonNullable<Result["field"]>): string {
   const rates = [
-    ...(field.k_n0 === null ? [] : [`k·n₀ = ${concise(field.k_n0.value, field.k_n0.u)} /ns`]),
-    ...(field.capture === null ? [] : [`c = ${concise(field.capture.value, field.capture.u)} /ns`]),
+    ...(field.k_n0 === null ? [] : [`k·n₀ = ${rangedText(field.k_n0, "/ns")}`]),
+    ...(field.capture === null ? [] : [`c = ${rangedText(field.capture, "/ns")}`]),
   ];
-  const d = `D = ${concise(field.D.value, field.D.u)} cm²/s`;
+  const d = `D = ${rangedText(field.D, "cm²/s")}`;
   return `${CANDIDATE[field.preferred]}; ${[d, ...rates].join(", ")}; p = ${probability(field.p_value)}`;
 }
 

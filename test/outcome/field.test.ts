@@ -1,8 +1,8 @@
 import { describe, expect, it } from "vitest";
 import { analysed, recorded } from "./recordings.ts";
 
-const pull = (q: { value: number; u: number } | null, truth: number): number =>
-  q === null ? Number.NaN : (q.value - truth) / q.u;
+const pull = (q: { value: number; u: number | null } | null, truth: number): number =>
+  (q?.u ?? null) === null ? Number.NaN : (q!.value - truth) / q!.u!;
 
 describe("the whole-stack fit in the main job", () => {
   const annihilating = recorded({

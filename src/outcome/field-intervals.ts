@@ -1,0 +1,89 @@
+import type { CandidateFit } from "../field/stack-fit/candidates.ts";
+import { type HeldFit, heldFit } from "../field/stack-fit/held-fit.ts";
+import { meanDiffusionOf, type Name } from "../field/stack-fit/parameters.ts";
+import { type Interval, profileInterval } from "../field/stack-fit/profile-interval.ts";
+import type { StackData } from "../field/stack-fit/stack-data.ts";
+
+/** The quantities of the whole-stack fit that get an interval. */
+export type Ranged = "D" | "tau" | "repulsion" | "k_n0" | "capture" | "trap_lifetime";
+const RANGED: readonly Ranged[] = ["D", "tau", "repulsion", "k_n0", "capture", "trap_lifetime"];
+
+export interface Range {
+  /** 95 %; null for an end that the data do not set. */
+  readonly ends: Interval;
+  /** Whether the likelihood is so far from normal that the interval is its profile's. */
+  readonly profiled: boolean;
+}
+
+/** 95 % of χ² with one degree of freedom. */
+const LEVEL = 3.841458820694124;
+/** How far −2 ln L at the ends of value ± 1.96 u may be from a normal likelihood's, relatively. */
+const NORMAL = 0.1;
+/** Lifetimes beyond this many times the recording's length and τ are none to it. */
+const ENDLESS = 100;
+
+/**
+ * The 95 % intervals of the preferred fit: value ± 1.96 u where −2 ln L at both ends is a normal likelihood's within 10 %
+ * along the line on which that one has its least rise; else by the profile of the likelihood (see `profileInterval`).
+ *
+ * @param birge factor on u; its square is the factor on the level
+ */
+export function fieldIntervals(
+  data: StackData,
+  fit: CandidateFit,
+  birge: number,
+): ReadonlyMap<Ranged, Range> {
+  const found = new Map<Ranged, Range>();
+  if (!fit.converged) return found;
+  for (const name of RANGED) {
+    const gradient = gradientOf(fit.names, name, fit.parameters);
+    if (gradient.some((g) => g !== 0))
+      found.set(name, rangeOf(name, heldFit(data, fit, gradient), data, fit, birge));
+  }
+  return found;
+}
+
+function gradientOf(names: readonly Name[], name: Ranged, p: Float64Array): number[] {
+  if (name === "D") return meanDiffusionOf(names, p).gradient;
+  return names.map((each) => (each === name ? 1 : 0));
+}
+
+function rangeOf(name: Ranged, held: HeldFit, data: StackData, fit: CandidateFit, birge: number): Range {
+  const u = birge * held.u;
+  const level = LEVEL * birge ** 2;
+  const [lowest, highest] = limitsOf(name, data, fit);
+  const half = Math.sqrt(LEVEL) * u;
+  const [low, high] = [held.value - half, held.value + half];
+  const normal = (x: number): boolean => {
+    const rise = held.riseAlong(x);
+    return rise !== null && Math.abs(rise / level - 1) < NORMAL;
+  };
+  const lifetime = name === "tau" || name === "trap_lifetime";
+  if (!(lifetime && (low <= 0 || high >= highest)) && normal(low) && normal(high)) {
+    return { ends: [low > lowest ? low : null, high < highest ? high : null], profiled: false };
+  }
+  const { value, rise } = held;
+  return {
+    ends: profileInterval({ value, u, lowest, highest, scale: lifetime ? "rate" : "value", rise }, level),
+    profiled: true,
+  };
+}
+
+/** What the quantity can be at all; D may come out negative and a rate may not. */
+function limitsOf(name: Ranged, data: StackData, fit: CandidateFit): [number, number] {
+  const tau = fit.parameters[fit.names.indexOf("tau")]!;
+  const delays = data.frames.map(({ delay }) => delay);
+  const length = Math.max(...delays) - Math.min(...delays) + data.gate;
+  switch (name) {
+    case "D":
+      return [Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY];
+    case "repulsion":
+      return [0, ENDLESS];
+    case "k_n0":
+    case "capture":
+      return [0, ENDLESS / Math.min(tau, length)];
+    case "tau":
+    case "trap_lifetime":
+      return [0, ENDLESS * (length + tau)];
+  }
+}
