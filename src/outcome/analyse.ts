@@ -19,7 +19,7 @@ import type { DecayLaw, Law, Result } from "./result.ts";
 import { frameRows, spotsOf } from "./rows.ts";
 import { tensorOf } from "./tensor.ts";
 import { judge } from "./verdict.ts";
-import { fitWholeStack, type WholeStack } from "./whole-stack.ts";
+import { fitWholeStack, type WholeStack, wholeLightOf } from "./whole-stack.ts";
 
 const DEFAULT_SEED = 1;
 
@@ -93,6 +93,7 @@ export function examine(stack: Stack, options: AnalysisOptions = {}): Examined {
     spreadCurve: spreadCurve(reading, joint),
     lightCurve: lightCurve(reading, joint),
     lightResiduals: lightResiduals(reading),
+    wholeLight: whole === null ? null : wholeLightOf(whole, stack),
   };
   const adopted = field?.adopted === true ? whole : null;
   return {

@@ -21,6 +21,11 @@ export interface Analysis {
   readonly lightCurve: readonly CurvePoint[];
   /** Residuals of the decay fit in standard deviations, one a frame; null where not used. */
   readonly lightResiduals: readonly (number | null)[];
+  /**
+   * Mean light of a frame over the whole picture by the preferred model of the whole stack, photons per pixel,
+   * row-major; false where the model leaves the frame out. Null where no model was fitted to the whole stack.
+   */
+  readonly wholeLight: ((frame: number, into: Float64Array) => boolean) | null;
 }
 
 /** What the user may set of the analysis. */

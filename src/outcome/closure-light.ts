@@ -1,9 +1,7 @@
-import { similarLight } from "../field/similar/similar-light.ts";
-import { problemOf } from "../field/stack-fit/parameters.ts";
 import { LAYOUT } from "../frame/pixel-spot.ts";
 import { referenceAt } from "../frame/references.ts";
 import type { Reading } from "./reading.ts";
-import { stackDataOf, type WholeStack } from "./whole-stack.ts";
+import { type WholeStack, wholeLightOf } from "./whole-stack.ts";
 
 /**
  * The mean light of every frame over the whole picture by the models of widths and decay, photons per pixel, row-major:
@@ -32,24 +30,10 @@ export function lightOfWidths(reading: Reading): Float64Array[] {
 }
 
 /** The same by the preferred model of the whole stack; a frame that it leaves out follows the widths. */
-export function lightOfWhole(reading: Reading, { fits }: WholeStack): Float64Array[] {
-  const data = stackDataOf(reading);
-  const { stack } = reading;
-  const { names, parameters } = fits.preferred;
-  const value = Object.fromEntries(names.map((name, j) => [name, parameters[j]!]));
-  const light = similarLight(problemOf(data, value));
-  const { kind, pixel } = data;
-  const area = kind === "map" ? pixel * pixel : pixel;
+export function lightOfWhole(reading: Reading, whole: WholeStack): Float64Array[] {
+  const fill = wholeLightOf(whole, reading.stack);
   const out = lightOfWidths(reading);
-  for (const [k, { frame, shift, background }] of data.frames.entries()) {
-    const x0 = -value.x! - shift[0];
-    const y0 = kind === "map" ? -value.y! - shift[1] : 0;
-    light.fill(k, { x0, y0, pixel, width: stack.width, height: stack.height }, out[frame]!);
-    const level = value.background! + background;
-    for (let i = 0; i < out[frame]!.length; i++) {
-      out[frame]![i] = value.amplitude! * area * out[frame]![i]! + level;
-    }
-  }
+  for (const [frame, light] of out.entries()) fill(frame, light);
   return out;
 }
 

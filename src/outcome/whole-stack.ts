@@ -1,7 +1,10 @@
 import { sigmaOfFwhm } from "../decay/gaussian-exponential.ts";
+import type { SimilarLight } from "../field/similar/problem.ts";
+import { similarLight } from "../field/similar/similar-light.ts";
 import type { StackFits } from "../field/stack-fit/candidates.ts";
 import { fitCandidates } from "../field/stack-fit/candidates.ts";
 import type { Symmetry, Values } from "../field/stack-fit/parameters.ts";
+import { problemOf, valuesOf } from "../field/stack-fit/parameters.ts";
 import type { StackData, StackFrame } from "../field/stack-fit/stack-data.ts";
 import { trimPatch } from "../field/stack-fit/stack-data.ts";
 import { rectangleAround } from "../frame/cut.ts";
@@ -12,6 +15,7 @@ import { prepareFrames } from "../frame/prepare.ts";
 import { referenceAt } from "../frame/references.ts";
 import { findStrikes } from "../frame/strikes.ts";
 import { chiSquareUpperTail } from "../numerics/distributions.ts";
+import type { Stack } from "../stack/stack.ts";
 import { meanDiffusion } from "../transport/line.ts";
 import { perAxis } from "../transport/width.ts";
 import { halves } from "./evidence.ts";
@@ -40,6 +44,33 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const hint = annihilation?.converged ? annihilation.parameters[annihilation.names.indexOf("k_n0")]! : null;
   const fits = fitCandidates(data, symmetryOf(reading), startOf(reading, joint, data), hint);
   return fits === null ? null : { data, fits };
+}
+
+/**
+ * Mean light of a frame over the whole picture by the preferred model, photons per pixel, row-major; false where the
+ * model leaves the frame out. The model is worked out when it is first asked for.
+ */
+export function wholeLightOf(
+  { data, fits }: WholeStack,
+  { width, height }: Stack,
+): (frame: number, into: Float64Array) => boolean {
+  const { names, parameters } = fits.preferred;
+  const value = valuesOf(names, parameters);
+  const { kind, pixel } = data;
+  const scale = value.amplitude! * (kind === "map" ? pixel * pixel : pixel);
+  let light: SimilarLight | null = null;
+  return (frame, into) => {
+    const k = data.frames.findIndex((each) => each.frame === frame);
+    if (k < 0) return false;
+    light ??= similarLight(problemOf(data, value));
+    const { shift, background } = data.frames[k]!;
+    const x0 = -value.x! - shift[0];
+    const y0 = kind === "map" ? -value.y! - shift[1] : 0;
+    light.fill(k, { x0, y0, pixel, width, height }, into);
+    const level = value.background! + background;
+    for (let i = 0; i < into.length; i++) into[i] = scale * into[i]! + level;
+    return true;
+  };
 }
 
 /** The frames that a model of the light must describe: all but those set aside for what they are. */

@@ -4,13 +4,13 @@ import { chosenFrames } from "./figure-profiles.ts";
 
 /** An analysis as plain data for a drawing thread: of the frames only those that a figure shows. */
 export interface FigureRequest {
-  readonly analysis: Omit<Analysis, "stack">;
+  readonly analysis: Omit<Analysis, "stack" | "wholeLight">;
   readonly stack: Omit<Stack, "read">;
   /** Stored counts by the frame's index. */
   readonly frames: ReadonlyMap<number, Float64Array>;
 }
 
-export function figureRequest({ stack, ...analysis }: Analysis): FigureRequest {
+export function figureRequest({ stack, wholeLight: _, ...analysis }: Analysis): FigureRequest {
   const { kind, frames, height, width, dark, acquisition, source } = stack;
   const read = chosenFrames(analysis).map(({ row }): [number, Float64Array] => {
     const counts = new Float64Array(height * width);
@@ -31,5 +31,6 @@ export function analysisOf({ analysis, stack, frames }: FigureRequest): Analysis
     if (counts === undefined) throw new RangeError(`frame ${index} was not sent to the drawing thread`);
     into.set(counts);
   };
-  return { ...analysis, stack: { ...stack, read } };
+  // no figure shows the whole-stack model's light
+  return { ...analysis, stack: { ...stack, read }, wholeLight: null };
 }

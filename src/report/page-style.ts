@@ -91,8 +91,15 @@ details > summary { cursor: pointer; color: var(--accent); margin-bottom: 0.6rem
 .controls label.wide, .controls .live { grid-column: 1 / -1; }
 .controls input[type="range"] { width: 100%; min-width: 0; height: 2rem; accent-color: var(--accent); }
 .controls button { font: inherit; min-width: 2.4rem; min-height: 2.4rem; color: var(--ink); background: var(--raised); border: 1px solid var(--soft); border-radius: 4px; cursor: pointer; }
+.choice { grid-column: 1 / -1; border: 0; margin: 0; padding: 0; display: flex; flex-wrap: wrap; gap: 0.1rem 1.2rem; }
+.choice legend { float: left; padding: 0; margin-right: 1rem; }
+.choice input { accent-color: var(--accent); }
 .live { font-weight: 600; margin: 0; max-width: none; }
 .maps { display: grid; grid-template-columns: repeat(3, minmax(0, 1fr)); gap: 1rem; }
+#viewer h3 { margin: 1.4rem 0 0.3rem; }
+#viewer h3 + p { margin-bottom: 0.7rem; max-width: 52rem; }
+.sums { max-width: 46rem; margin-bottom: 1.6rem; }
+.sums figcaption span { display: block; font-weight: 400; }
 .maps figcaption { margin: 0 0 0.3rem; color: var(--ink); font-weight: 600; }
 .screen { position: relative; background: var(--rule); }
 .screen canvas { display: block; width: 100%; image-rendering: pixelated; }
@@ -114,7 +121,11 @@ footer p { max-width: none; margin-bottom: 0.3rem; }
 
 @media (max-width: 40rem) {
   main, .top, footer { padding-left: 1rem; padding-right: 1rem; }
-  .maps { grid-template-columns: 1fr 1fr; }
+  .maps { gap: 0.6rem; }
+  .choice legend { float: none; }
+  .sums figcaption span { font-size: 0.8rem; }
+  .frame-maps { grid-template-columns: 1fr 1fr; }
+  .map .frame-maps > :last-child, .trace .sums > :last-child { grid-column: 1 / -1; }
   .number { padding: 0.7rem 0.9rem; }
   .scroll table { font-size: 0.85rem; }
 }

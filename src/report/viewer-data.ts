@@ -4,6 +4,7 @@ import type { FrameRow } from "../outcome/result.ts";
 import type { Stack } from "../stack/stack.ts";
 import { darkCells, type Region, regionOf, sumCells } from "./light-map.ts";
 import { concise, plain } from "./notation.ts";
+import { type WholeData, wholeCells } from "./viewer-whole.ts";
 import { FLAG } from "./wording.ts";
 
 /** Packs bytes for the page: the zlib format (RFC 1950) that its DecompressionStream("deflate") reads, as base64. */
@@ -26,10 +27,14 @@ export interface ViewerData {
   readonly stride: number;
   /** Place in `frames` that is shown first. */
   readonly first: number;
+  /** The whole-stack model beside each frame's spot, where one was fitted. */
+  readonly whole: WholeData | null;
 }
 
 export interface ViewerFrame {
   readonly title: string;
+  /** Delay in ns, as printed. */
+  readonly delay: string;
   /** N, x, y, Σxx, Σxy, Σyy, B as in a spot; null without one. */
   readonly spot: readonly number[] | null;
   readonly used: boolean;
@@ -42,6 +47,8 @@ export interface Viewer {
   readonly data: ViewerData;
   /** The frames' cells, packed. */
   readonly cells: string;
+  /** The whole-stack model's cells, packed; empty without one. */
+  readonly wholeCells: string;
 }
 
 /** Cells in the whole page at most; at 4 to 6 bits a cell this keeps the report well under 2 MB. */
@@ -60,6 +67,7 @@ export function viewerData(analysis: Analysis, pack: Pack): Viewer {
   const shown = result.frames.filter((_, place) => place % stride === 0);
   const values = readCells(stack, region, shown);
   const { low, step, bytes } = quantise(values, leastStep(stack, spots, region));
+  const whole = wholeCells(analysis, region, shown);
   const { detector, space } = stack.acquisition;
   const firstUsed = shown.findIndex((row) => row.used);
   return {
@@ -74,8 +82,10 @@ export function viewerData(analysis: Analysis, pack: Pack): Viewer {
       stride,
       frames: shown.map((row) => describeFrame(row, spots[row.index] ?? null, result.frames.length)),
       first: Math.max(0, firstUsed),
+      whole: whole?.data ?? null,
     },
     cells: pack(bytes),
+    wholeCells: whole === null ? "" : pack(whole.bytes),
   };
 }
 
@@ -143,6 +153,7 @@ function describeFrame(row: FrameRow, spot: Spot | null, total: number): ViewerF
   if (row.hot_pixels > 0) numbers.push(["Hot pixels left out", String(row.hot_pixels)]);
   return {
     title: `Frame ${row.index} (0 to ${total - 1}), ${plain(row.delay_ns)} ns`,
+    delay: plain(row.delay_ns),
     spot:
       spot === null ? null : [spot.photons, ...spot.centre, ...spot.covariance, spot.background].map(short),
     used: row.used,

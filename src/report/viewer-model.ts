@@ -37,3 +37,18 @@ export function residualCells(light: Float64Array, model: Float64Array, shown: S
     return (value - expected) / Math.sqrt(Math.max(1e-6, shown.excessNoise * Math.max(0, expected) + dark));
   });
 }
+
+/** Cells of one frame from the levels of a whole-stack model, photons. Its text is put into the page, too. */
+export function wholeModelCells(
+  levels: Uint16Array,
+  place: number,
+  step: number,
+  shown: Pick<ViewerData, "region" | "excessNoise" | "darkVariance">,
+): Float64Array {
+  const { columns, rows, bin, binDown } = shown.region;
+  const size = columns * rows;
+  const dark = bin * binDown * shown.darkVariance;
+  return Float64Array.from({ length: size }, (_, k) => {
+    return Math.max(0, (step * (levels[place * size + k] ?? 0)) ** 2 - dark) / shown.excessNoise;
+  });
+}

@@ -1,18 +1,28 @@
 import type { colourRamps } from "./viewer-colours.ts";
+import type { cutShapes, Shape, shortNumber } from "./viewer-cut.ts";
 import type { ViewerData } from "./viewer-data.ts";
-import type { modelCells, residualCells } from "./viewer-model.ts";
+import type { modelCells, residualCells, wholeModelCells } from "./viewer-model.ts";
+import type { overlayShapes } from "./viewer-overlay.ts";
+import type { Compared, inGroups, residualSum } from "./viewer-sum.ts";
 
 /** Functions whose text stands in the page beside the viewer's own. */
-interface Tools {
+export interface Tools {
   readonly colourRamps: typeof colourRamps;
   readonly modelCells: typeof modelCells;
+  readonly wholeModelCells: typeof wholeModelCells;
   readonly residualCells: typeof residualCells;
+  readonly residualSum: typeof residualSum;
+  readonly inGroups: typeof inGroups;
+  readonly cutShapes: typeof cutShapes;
+  readonly shortNumber: typeof shortNumber;
+  readonly overlayShapes: typeof overlayShapes;
 }
 
 /**
  * The page's frame viewer. Its *text* is put into the report, so it must hold everything it needs: no import but of
  * types, no name from outside this function. It inflates the cells, has each frame's model computed from its
- * seven numbers, and draws map, model, residual and two cuts for the frame that the slider stands on.
+ * seven numbers or read from the whole-stack model's cells, and draws map, model, residual and two cuts for the frame
+ * that the slider stands on, and what the model leaves over in many frames together.
  */
 export async function frameViewer(tools: Tools): Promise<void> {
   const element = <T extends Element>(id: string): T => document.getElementById(id) as unknown as T;
@@ -23,18 +33,30 @@ export async function frameViewer(tools: Tools): Promise<void> {
   const size = columns * rows;
   const isTrace = data.kind === "trace";
   const count = data.frames.length;
-  const levels = await inflate(element("viewer-cells").textContent ?? "");
+  const levels = await inflate("viewer-cells");
+  const wholeLevels = await readWhole();
   const slider = element<HTMLInputElement>("frame");
   const sameScale = element<HTMLInputElement>("same-scale");
+  const wholeChosen = document.querySelector<HTMLInputElement>("#model-whole");
   const ramps = tools.colourRamps();
+  const short = tools.shortNumber;
 
   /** Cells of every frame, as 16-bit levels. */
-  async function inflate(text: string): Promise<Uint16Array> {
+  async function inflate(id: string): Promise<Uint16Array> {
+    const text = element(id).textContent ?? "";
     const packed = Uint8Array.from(atob(text.trim()), (character) => character.charCodeAt(0));
     const stream = new Blob([packed]).stream().pipeThrough(new DecompressionStream("deflate"));
     const bytes = new Uint8Array(await new Response(stream).arrayBuffer());
     const half = bytes.length / 2;
     return Uint16Array.from({ length: half }, (_, k) => (bytes[k] ?? 0) + 256 * (bytes[half + k] ?? 0));
+  }
+
+  /** The whole-stack model's levels: of each the difference to the frame before is stored. */
+  async function readWhole(): Promise<Uint16Array | null> {
+    if (data.whole === null) return null;
+    const found = await inflate("viewer-whole");
+    for (let k = size; k < found.length; k++) found[k] = (found[k] ?? 0) + (found[k - size] ?? 0);
+    return found;
   }
 
   /** Recorded photons of one frame's cells. */
@@ -45,13 +67,18 @@ export async function frameViewer(tools: Tools): Promise<void> {
     );
   }
 
+  /** The chosen model of a frame; null where there is none. */
   function modelled(place: number): Float64Array | null {
+    if (data.whole !== null && wholeLevels !== null && wholeChosen?.checked === true) {
+      if (data.whole.leftOut.includes(place)) return null;
+      return tools.wholeModelCells(wholeLevels, place, data.whole.step, data);
+    }
     const spot = data.frames[place]?.spot ?? null;
     return spot === null ? null : tools.modelCells(spot, data);
   }
 
-  const wholeTrace = isTrace ? stackUp() : null;
   const everyScale = scaleOf(Array.from({ length: count }, (_, place) => place));
+  let wholeTrace: ReturnType<typeof stackUp> | null = null;
 
   /** A trace is looked at as a whole: delay downwards, one row a frame. */
   function stackUp() {
@@ -84,12 +111,13 @@ export async function frameViewer(tools: Tools): Promise<void> {
   function paint(
     id: string,
     cells: Float64Array | null,
-    [low, high]: [number, number],
+    [low, high]: readonly [number, number],
     colours: Uint8ClampedArray,
+    [width, height]: readonly [number, number] = [columns, isTrace ? count : rows],
   ): void {
     const canvas = element<HTMLCanvasElement>(id);
-    canvas.width = columns;
-    canvas.height = isTrace ? count : rows;
+    canvas.width = width;
+    canvas.height = height;
     const context = canvas.getContext("2d");
     if (context === null || cells === null) return;
     const image = context.createImageData(canvas.width, canvas.height);
@@ -108,61 +136,30 @@ export async function frameViewer(tools: Tools): Promise<void> {
     canvas.getContext("2d")?.putImageData(new ImageData(new Uint8ClampedArray(colours), 256, 1), 0, 0);
   }
 
-  function shape(name: string, attributes: Record<string, string | number>, text = ""): SVGElement {
+  function draw([name, attributes, text = ""]: Shape): SVGElement {
     const node = document.createElementNS(SVG, name);
     for (const [key, value] of Object.entries(attributes)) node.setAttribute(key, String(value));
     node.textContent = text;
     return node;
   }
 
-  /** Over the map: the ellipse of one standard deviation and a bar of a round length; on a trace, the row shown. */
+  /** Over the maps: spot and bar of a round length; on a trace, the row shown. */
   function overlay(place: number): void {
-    const height = isTrace ? count : rows;
-    const round =
+    const bar =
       [10, 5, 2, 1, 0.5, 0.2, 0.1, 0.05, 0.02].find((length) => length <= 0.3 * columns * bin * pixel) ??
       0.01;
+    const spot = data.frames[place]?.spot ?? null;
+    const row: Shape = ["rect", { x: 0, y: place, width: columns, height: 1, class: "outline" }];
     for (const id of ["map-over", "model-over", "residual-over"]) {
       const svg = element<SVGSVGElement>(id);
-      svg.setAttribute("viewBox", `0 0 ${columns} ${height}`);
+      svg.setAttribute("viewBox", `0 0 ${columns} ${isTrace ? count : rows}`);
       svg.setAttribute("preserveAspectRatio", "none");
-      const spot = data.frames[place]?.spot ?? null;
-      const parts: SVGElement[] = [];
-      if (isTrace) parts.push(shape("rect", { x: 0, y: place, width: columns, height: 1, class: "outline" }));
-      else {
-        const unit = bin * pixel;
-        if (spot !== null) {
-          const [, cx = 0, cy = 0, xx = 0, xy = 0, yy = 0] = spot;
-          const turn = 0.5 * Math.atan2(2 * xy, xx - yy);
-          const half = Math.hypot((xx - yy) / 2, xy);
-          const x = (cx / pixel + 0.5 - left) / bin;
-          const y = (cy / pixel + 0.5 - top) / bin;
-          parts.push(
-            shape("ellipse", {
-              rx: Math.sqrt((xx + yy) / 2 + half) / unit,
-              ry: Math.sqrt(Math.max(0, (xx + yy) / 2 - half)) / unit,
-              transform: `translate(${x} ${y}) rotate(${(turn * 180) / Math.PI})`,
-              class: "outline",
-            }),
-          );
-        }
-        if (id === "map-over") {
-          const length = round / unit;
-          parts.push(
-            shape("line", {
-              x1: 0.05 * columns,
-              x2: 0.05 * columns + length,
-              y1: 0.94 * rows,
-              y2: 0.94 * rows,
-              class: "bar",
-            }),
-          );
-        }
-      }
-      svg.replaceChildren(...parts);
+      const shapes = isTrace ? [row] : tools.overlayShapes(spot, data, id === "map-over" ? bar : null);
+      svg.replaceChildren(...shapes.map(draw));
     }
     element("scale-bar").textContent = isTrace
       ? "Delay runs downwards; the outline marks the frame."
-      : `Bar: ${round} µm. Ellipse: one standard deviation.`;
+      : `Bar: ${bar} µm. Ellipse: one standard deviation of the frame's spot.`;
   }
 
   /** Sums across a strip of one standard deviation about the centre: along x, or along y. */
@@ -195,56 +192,60 @@ export async function frameViewer(tools: Tools): Promise<void> {
     const half = isTrace ? 0 : Math.sqrt(along === "x" ? yy : xx) / pixel / bin;
     const points = strip(light, along, acrossCentre, half);
     const curve = model === null ? [] : strip(model, along, acrossCentre, half);
-    const low = Math.min(0, ...points);
-    const high = Math.max(...points, ...curve, low + 1e-9) * 1.05;
     const origin = along === "x" ? left : top;
     const position = (i: number) => (origin + (i + 0.5) * bin - 0.5) * pixel;
-    const [w, h, x0, y0] = [420, 214, 58, 168];
-    const px = (i: number) => x0 + ((w - x0 - 10) * (i + 0.5)) / points.length;
-    const py = (value: number) => y0 - ((y0 - 10) * (value - low)) / (high - low);
-    const parts = [shape("rect", { x: x0, y: 10, width: w - x0 - 10, height: y0 - 10, class: "axes" })];
-    const label = (x: number, y: number, text: string, anchor: string) =>
-      parts.push(shape("text", { x, y, "text-anchor": anchor }, text));
-    for (const value of ticks(low, high)) {
-      parts.push(shape("line", { x1: x0 - 4, x2: x0, y1: py(value), y2: py(value), class: "axes" }));
-      label(x0 - 7, py(value) + 4, short(value), "end");
-    }
-    for (const value of ticks(position(0), position(points.length - 1))) {
-      const x = px((value - position(0)) / (bin * pixel));
-      parts.push(shape("line", { x1: x, x2: x, y1: y0, y2: y0 + 4, class: "axes" }));
-      label(x, y0 + 18, short(value), "middle");
-    }
-    label((x0 + w - 10) / 2, h - 4, `${along} (µm)`, "middle");
-    points.forEach((value, i) => {
-      parts.push(shape("circle", { cx: px(i), cy: py(value), r: 2, class: "data" }));
+    const ends = [position(0), position(points.length - 1)] as const;
+    svg.setAttribute("viewBox", "0 0 420 214");
+    svg.replaceChildren(...tools.cutShapes({ along, points, curve, ends }, short).map(draw));
+  }
+
+  /** What the chosen model leaves over: early, middle and late frames; of a trace, one map of groups of frames. */
+  function showSums(): void {
+    const places = data.frames.flatMap(({ used }, place) => {
+      return used || data.whole?.leftOut.includes(place) === false ? [place] : [];
     });
-    if (curve.length > 0)
-      parts.push(
-        shape("polyline", {
-          points: curve.map((value, i) => `${px(i)},${py(value)}`).join(" "),
-          class: "law",
-        }),
-      );
-    svg.setAttribute("viewBox", `0 0 ${w} ${h}`);
-    svg.replaceChildren(...parts);
+    const group = Math.max(1, Math.round(Math.max(columns, rows) / (isTrace ? 32 : 20)));
+    const sums = tools.inGroups(places, isTrace ? 24 : 3).map((members) => {
+      const compared = members.flatMap((place): Compared[] => {
+        const model = modelled(place);
+        return model === null ? [] : [{ light: recorded(place), model }];
+      });
+      return { members, ...tools.residualSum(compared, data, group) };
+    });
+    if (isTrace) {
+      const width = sums[0]?.columns ?? 1;
+      const cells = Float64Array.from(sums.flatMap((sum) => [...sum.cells]));
+      paint("sum-0", cells, [-4, 4], ramps.residual, [width, Math.max(1, sums.length)]);
+      const square = sums.reduce((total, { rms }) => total + (rms ?? 1) ** 2, 0) / Math.max(1, sums.length);
+      caption("sum-0", places, Math.sqrt(square));
+      return;
+    }
+    for (const i of [0, 1, 2]) {
+      const sum = sums[i];
+      element<HTMLElement>(`sum-${i}-figure`).hidden = sum === undefined;
+      if (sum === undefined) continue;
+      paint(`sum-${i}`, sum.cells, [-4, 4], ramps.residual, [sum.columns, sum.rows]);
+      caption(`sum-${i}`, sum.members, sum.rms);
+    }
   }
 
-  function short(value: number): string {
-    const size = Math.abs(value);
-    const text =
-      size !== 0 && (size >= 1e6 || size < 0.001)
-        ? value.toExponential(1)
-        : String(Number(value.toPrecision(size >= 1000 ? 6 : 3)));
-    return (size >= 1000 && size < 1e6 ? String(Math.round(value)) : text).replace("-", "−");
+  function caption(id: string, members: readonly number[], rms: number | null): void {
+    const delay = (place: number | undefined) => data.frames[place ?? 0]?.delay ?? "";
+    const reach = `${delay(members[0])} to ${delay(members.at(-1))} ns`;
+    const text = `${reach}, ${members.length} frames${rms === null ? "" : `, rms ${rms.toFixed(2)}`}`;
+    element(`${id}-text`).textContent = text;
+    element(id).setAttribute("aria-label", `Residuals added up, ${text}`);
   }
 
-  /** Round numbers between two ends, three to seven of them. */
-  function ticks(low: number, high: number): number[] {
-    const raw = (high - low) / 5;
-    const power = 10 ** Math.floor(Math.log10(raw));
-    const step = ([1, 2, 5, 10].find((factor) => factor * power >= raw) ?? 10) * power;
-    const first = Math.ceil(low / step);
-    return Array.from({ length: Math.floor(high / step) - first + 1 }, (_, i) => (first + i) * step);
+  /** The model was chosen anew: everything that hangs on it. */
+  function choose(): void {
+    const whole = data.whole !== null && wholeChosen?.checked === true ? data.whole : null;
+    const name = whole === null ? "each frame's spot" : "whole stack";
+    if (data.whole !== null) element("model-name").textContent = `Model: ${name}`;
+    element("model").setAttribute("aria-label", `Light by the model: ${name}`);
+    wholeTrace = isTrace ? stackUp() : null;
+    showSums();
+    show();
   }
 
   function show(): void {
@@ -269,7 +270,9 @@ export async function frameViewer(tools: Tools): Promise<void> {
     element("light-low").textContent = short(scale[0] / area);
     element("light-high").textContent = short(scale[1] / area);
     const state = frame.flags === "" ? (frame.used ? "used" : "not used") : `set aside: ${frame.flags}`;
-    const text = `${frame.title}: ${state}${frame.spot === null ? "; no spot was fitted" : ""}`;
+    const lacking =
+      wholeChosen?.checked === true ? "the whole-stack fit leaves it out" : "no spot was fitted";
+    const text = `${frame.title}: ${state}${model === null ? `; ${lacking}` : ""}`;
     element("frame-text").textContent = text;
     slider.setAttribute("aria-valuetext", text);
     element("map").setAttribute("aria-label", `Recorded light, ${text}`);
@@ -291,6 +294,9 @@ export async function frameViewer(tools: Tools): Promise<void> {
   paintBar("residual-bar", ramps.residual);
   slider.addEventListener("input", show);
   sameScale.addEventListener("change", show);
+  for (const input of document.querySelectorAll('input[name="model"]')) {
+    input.addEventListener("change", choose);
+  }
   for (const [id, by] of [
     ["frame-back", -1],
     ["frame-on", 1],
@@ -301,5 +307,5 @@ export async function frameViewer(tools: Tools): Promise<void> {
     });
   }
   element<HTMLElement>("viewer").hidden = false;
-  show();
+  choose();
 }

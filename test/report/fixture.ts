@@ -87,6 +87,7 @@ export function makeAnalysis(name: Case, options: FixtureOptions = {}): Analysis
     ),
     lightCurve: curve(rows, truth.light, (_, v) => 0.004 * v + 2),
     lightResiduals: rows.map((row) => (row.used_in_decay ? draw.normal(0, 1)() : null)),
+    wholeLight: null,
   };
 }
 

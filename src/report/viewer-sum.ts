@@ -1,0 +1,57 @@
+import type { ViewerData } from "./viewer-data.ts";
+
+/** A frame's recorded and modelled cells, photons. */
+export interface Compared {
+  readonly light: Float64Array;
+  readonly model: Float64Array;
+}
+
+/** Residuals added up, in standard deviations. */
+export interface ResidualSum {
+  readonly columns: number;
+  readonly rows: number;
+  readonly cells: Float64Array;
+  /** Root of the mean square over cells with light enough; null without such a cell. */
+  readonly rms: number | null;
+}
+
+/**
+ * What a model leaves over in several frames together: Σ(recorded − model) / √Σ variance over the frames and over
+ * squares of `group` × `group` cells (on a trace, `group` cells along the line). Where the model is right each sum is a
+ * draw of mean 0 and standard deviation 1, so that what is common to the frames stands out and chance does not. Its
+ * text is put into the page, so it must hold everything it needs.
+ */
+export function residualSum(
+  frames: readonly Compared[],
+  shown: Pick<ViewerData, "region" | "excessNoise" | "darkVariance">,
+  group: number,
+): ResidualSum {
+  const { region, excessNoise } = shown;
+  const dark = region.bin * region.binDown * shown.darkVariance;
+  const columns = Math.ceil(region.columns / group);
+  const rows = Math.ceil(region.rows / group);
+  const sums = new Float64Array(columns * rows);
+  const variances = new Float64Array(columns * rows);
+  for (const { light, model } of frames) {
+    for (let k = 0; k < light.length; k++) {
+      const row = Math.floor(Math.floor(k / region.columns) / group);
+      const at = row * columns + Math.floor((k % region.columns) / group);
+      const expected = model[k] ?? 0;
+      sums[at] = (sums[at] ?? 0) + (light[k] ?? 0) - expected;
+      variances[at] = (variances[at] ?? 0) + excessNoise * Math.max(0, expected) + dark;
+    }
+  }
+  const cells = sums.map((sum, at) => sum / Math.sqrt(Math.max(1e-6, variances[at] ?? 0)));
+  // below a handful of photons a sum is not yet normal (common practice, no source)
+  const bright = cells.filter((_, at) => (variances[at] ?? 0) >= 5);
+  const square = bright.reduce((sum, value) => sum + value * value, 0);
+  return { columns, rows, cells, rms: bright.length === 0 ? null : Math.sqrt(square / bright.length) };
+}
+
+/** Consecutive groups of nearly equal size, at most `count` of them. Its text is put into the page, too. */
+export function inGroups(places: readonly number[], count: number): number[][] {
+  const groups = Math.min(count, places.length);
+  return Array.from({ length: groups }, (_, i) =>
+    places.slice(Math.round((i * places.length) / groups), Math.round(((i + 1) * places.length) / groups)),
+  );
+}
