@@ -2,6 +2,7 @@ import { boltzmann, elementaryCharge } from "../numerics/constants.ts";
 import type { Input } from "../numerics/propagate.ts";
 import { propagate, propagateByMonteCarlo } from "../numerics/propagate.ts";
 import type { Acquisition } from "../stack/acquisition.ts";
+import type { Range } from "./field-intervals.ts";
 import type { FieldQuantities } from "./field-quantities.ts";
 import type { Derived, Joint } from "./joint.ts";
 import { diffusionOf, quadratic } from "./joint.ts";
@@ -57,7 +58,25 @@ export function quantitiesOfField(
 ): Quantities {
   const diffusion = { value: CM2_PER_S * field.diffusion.value, u: CM2_PER_S * field.diffusion.u };
   const counted = { diffusion, lifetime: field.lifetime, length2: field.length2, product: null };
-  return finish(counted, acquisition, "field", "field", seed);
+  const found = finish(counted, acquisition, "field", "field", seed);
+  const { diffusion_coefficient: d, lifetime } = found.quantities;
+  return {
+    ...found,
+    quantities: {
+      ...found.quantities,
+      diffusion_coefficient: lopsided(d, field.ranges.get("D"), CM2_PER_S),
+      lifetime: lifetime === null ? null : lopsided(lifetime, field.ranges.get("tau"), 1),
+    },
+  };
+}
+
+/** A profile's interval with the systematic part added to both its sides in quadrature. */
+function lopsided(quantity: Quantity, range: Range | undefined, unit: number): Quantity {
+  const [low, high] = range?.ends ?? [null, null];
+  if (range?.profiled !== true || low === null || high === null) return quantity;
+  const { value, u_systematic } = quantity;
+  const side = (end: number): number => Math.hypot(unit * end - value, TWO_SIDED * u_systematic);
+  return { ...quantity, interval95: [value - side(low), value + side(high)] };
 }
 
 function finish(

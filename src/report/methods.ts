@@ -1,7 +1,7 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
 import { concise, plain, symbols } from "./notation.ts";
-import { rangedText } from "./ranged-text.ts";
+import { fieldUncertaintyText, rangedText } from "./ranged-text.ts";
 import {
   baseName,
   CANDIDATE,
@@ -112,11 +112,13 @@ function fieldMethod({ field }: Result): string {
     ...(field.capture === null
       ? []
       : [`capture at ${rangedText(field.capture, "/ns")}, trapped excitons taken to shine like free ones`]),
+    ...(field.trap_lifetime === null ? [] : [`lifetime in traps ${rangedText(field.trap_lifetime, "ns")}`]),
   ];
   const found = [`D = ${rangedText(field.D, "cm²/s")}`, `τ = ${rangedText(field.tau, "ns")}`, ...rates];
   return (
     "The reaction–diffusion model ∂n/∂t = ∇·D∇n − n/τ − k n² − c n for free and ∂m/∂t = c n − m/τ_m for trapped excitons was fitted to all pixels of all frames at once by maximum likelihood (damped Fisher scoring), " +
     `with its terms chosen by corrected Akaike weight and goodness of fit: ${CANDIDATE[field.preferred]} (${found.join(", ")}; χ²/dof = ${(field.chi2 / field.degrees_of_freedom).toFixed(2)} over rings of groups of frames, p ${equalsText(field.p_value)}). ` +
+    fieldUncertaintyText(field) +
     (field.adopted
       ? "D, τ and L are from this fit."
       : "D, τ and L are from the widths and the decay; this fit stands beside them.")

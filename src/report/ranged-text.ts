@@ -1,7 +1,9 @@
+import { birgeFactor } from "../numerics/model-choice.ts";
 import type { Result } from "../outcome/result.ts";
 import { concise, plain } from "./notation.ts";
 
-type Ranged = NonNullable<Result["field"]>["D"];
+type Field = NonNullable<Result["field"]>;
+type Ranged = Field["D"];
 
 /** Digits of a number whose uncertainty is not known, and of the ends of a lopsided interval. */
 const DIGITS = 3;
@@ -21,4 +23,29 @@ export function rangedText(
   if (high === null) return `at least ${short(low)} ${unit} (95 %, not determined from above)`;
   const text = `${concise(value, u)} ${unit}`;
   return interval_from === "profile" ? `${text} (95 %: ${short(low)} to ${short(high)} ${unit})` : text;
+}
+
+const WORDS = {
+  D: "D",
+  tau: "τ",
+  k_n0: "k·n₀",
+  capture: "the rate of capture",
+  trap_lifetime: "the lifetime in traps",
+} as const;
+
+/** How the whole-stack fit's uncertainties were found, as a sentence or two; none where it has none. */
+export function fieldUncertaintyText(field: Field): string {
+  if (field.D.u === null) return "The fit has no uncertainties: the data do not determine it. ";
+  const birge = birgeFactor(field.chi2, field.degrees_of_freedom);
+  const widened =
+    birge > 1
+      ? `, widened by √(χ²/dof) = ${birge.toFixed(2)} (Birge), as each candidate's by its own where that is significantly above 1`
+      : "";
+  const names = Object.keys(WORDS) as (keyof typeof WORDS)[];
+  const profiled = names.filter((name) => field[name]?.interval_from === "profile");
+  const profiles =
+    profiled.length === 0
+      ? ""
+      : `The 95 % interval of ${profiled.map((name) => WORDS[name]).join(", ")} is where −2 ln L, refitted over all other parameters, rises by no more than 3.84${birge > 1 ? " times the square of that factor" : ""} (profile likelihood), because it is far from a parabola there. `;
+  return `Uncertainties are those of the inverse Fisher matrix${widened}. ${profiles}`;
 }

@@ -129,6 +129,7 @@ export function fieldText(field: NonNullable<Result["field"]>): string {
   const rates = [
     ...(field.k_n0 === null ? [] : [`k·n₀ = ${rangedText(field.k_n0, "/ns")}`]),
     ...(field.capture === null ? [] : [`c = ${rangedText(field.capture, "/ns")}`]),
+    ...(field.trap_lifetime === null ? [] : [`lifetime in traps ${rangedText(field.trap_lifetime, "ns")}`]),
   ];
   const d = `D = ${rangedText(field.D, "cm²/s")}`;
   return `${CANDIDATE[field.preferred]}; ${[d, ...rates].join(", ")}; p = ${probability(field.p_value)}`;
