@@ -21,11 +21,15 @@ export function fieldBlock(
   const { goodness } = preferred;
   const length = Math.sqrt(Math.max(field.length2.value, 0));
   const determined = preferred.converged;
-  const ranged = (name: Ranged, { value, u }: { value: number; u: number }, factor = 1): RangedValue => {
+  const ranged = (
+    name: Ranged,
+    { value, u }: { value: number; u: number | null },
+    factor = 1,
+  ): RangedValue => {
     const { ends, profiled } = field.ranges.get(name) ?? { ends: [null, null], profiled: false };
     return {
       value: factor * value,
-      u: determined ? factor * u : null,
+      u: determined && u !== null ? factor * u : null,
       interval95: [scaled(ends[0], factor), scaled(ends[1], factor)],
       interval_from: profiled ? "profile" : "covariance",
     };
@@ -33,8 +37,7 @@ export function fieldBlock(
   const free = (name: Name & Ranged): RangedValue | null => {
     const i = preferred.names.indexOf(name);
     if (i < 0) return null;
-    const u = uncertaintyOf(preferred, i) ?? 0;
-    return ranged(name, { value: preferred.parameters[i]!, u });
+    return ranged(name, { value: preferred.parameters[i]!, u: uncertaintyOf(preferred, i) });
   };
   const rate = free("k_n0");
   const { density } = acquisition.sample;
@@ -90,7 +93,8 @@ function perDensity(rate: RangedValue, density: Measured): NonNullable<Result["f
 /** With the fit's own Birge factor; null where the data do not determine the fit's parameters. */
 function uncertaintyOf(fit: CandidateFit, i: number): number | null {
   const variance = fit.covariance[i * fit.names.length + i]!;
-  if (!fit.converged || !(variance >= 0 && Number.isFinite(variance))) return null;
+  if (!fit.converged || fit.held.includes(fit.names[i]!) || !(variance >= 0 && Number.isFinite(variance)))
+    return null;
   return birgeOf(fit) * Math.sqrt(variance);
 }
 

@@ -1,4 +1,5 @@
 import type { CandidateFit } from "../field/stack-fit/candidates.ts";
+import { endlessLifetime } from "../field/stack-fit/endless.ts";
 import { type HeldFit, heldFit } from "../field/stack-fit/held-fit.ts";
 import { meanDiffusionOf, type Name } from "../field/stack-fit/parameters.ts";
 import { type Interval, profileInterval } from "../field/stack-fit/profile-interval.ts";
@@ -19,7 +20,7 @@ export interface Range {
 const LEVEL = 3.841458820694124;
 /** How far −2 ln L at the ends of value ± 1.96 u may be from a normal likelihood's, relatively. */
 const NORMAL = 0.1;
-/** Lifetimes beyond this many times the recording's length and τ are none to it. */
+/** Nothing is looked for beyond this: rates in units of 1/τ or of one over the recording's length, and lifetimes. */
 const ENDLESS = 100;
 
 /**
@@ -59,7 +60,9 @@ function rangeOf(name: Ranged, held: HeldFit, data: StackData, fit: CandidateFit
     return rise !== null && Math.abs(rise / level - 1) < NORMAL;
   };
   const lifetime = name === "tau" || name === "trap_lifetime";
-  if (!(lifetime && (low <= 0 || high >= highest)) && normal(low) && normal(high)) {
+  // where a parameter is held at its end the line does not see what the others gain by its coming back
+  const straight = fit.held.length === 0 && !(lifetime && (low <= 0 || high >= highest));
+  if (straight && normal(low) && normal(high)) {
     return { ends: [low > lowest ? low : null, high < highest ? high : null], profiled: false };
   }
   const { value, rise } = held;
@@ -83,7 +86,8 @@ function limitsOf(name: Ranged, data: StackData, fit: CandidateFit): [number, nu
     case "capture":
       return [0, ENDLESS / Math.min(tau, length)];
     case "tau":
-    case "trap_lifetime":
       return [0, ENDLESS * (length + tau)];
+    case "trap_lifetime":
+      return [0, Math.min(endlessLifetime(data), ENDLESS * ENDLESS * (length + tau))];
   }
 }

@@ -17,11 +17,11 @@ export function rangedText(
   unit: string,
 ): string {
   const short = (x: number): string => plain(Number(x.toPrecision(DIGITS)));
-  if (u === null) return `${short(value)} ${unit} (not determined)`;
+  if (u === null && low === null && high === null) return `${short(value)} ${unit} (not determined)`;
   if (low === null && high === null) return `${short(value)} ${unit} (not determined from below or above)`;
   if (low === null) return `at most ${short(high!)} ${unit} (95 %, not determined from below)`;
   if (high === null) return `at least ${short(low)} ${unit} (95 %, not determined from above)`;
-  const text = `${concise(value, u)} ${unit}`;
+  const text = `${u === null ? short(value) : concise(value, u)} ${unit}`;
   return interval_from === "profile" ? `${text} (95 %: ${short(low)} to ${short(high)} ${unit})` : text;
 }
 

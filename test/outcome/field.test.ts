@@ -1,4 +1,5 @@
 import { describe, expect, it } from "vitest";
+import { renderTerminal } from "../../src/report/terminal.ts";
 import { analysed, recorded } from "./recordings.ts";
 
 const pull = (q: { value: number; u: number | null } | null, truth: number): number =>
@@ -43,6 +44,27 @@ describe("the whole-stack fit in the main job", () => {
     ).toBeLessThan(3.5);
     expect(Math.abs(pull(result.quantities.diffusion_length, truth.diffusion_length_um))).toBeLessThan(3.5);
     expect(result.verdict.reasons.map(({ code }) => code)).toContain("traps-suspected");
+  });
+
+  it("gives a limit where traps hold longer than the recording can tell, and says so", () => {
+    const { stack, truth } = recorded({
+      life: { lifetime: "5 ns", capture: "0.2 /ns", trap_light: 1, trap_lifetime: "500 ns" },
+    });
+    const analysis = analysed(stack);
+    const { field, quantities, verdict } = analysis.result;
+    expect(field?.preferred).toBe("capture");
+    expect(quantities.diffusion_coefficient.from).toBe("field");
+    expect(
+      Math.abs(pull(quantities.diffusion_coefficient, truth.diffusion_coefficient_cm2_per_s)),
+    ).toBeLessThan(3.5);
+    const [low, high] = field?.trap_lifetime?.interval95 ?? [null, null];
+    expect(field?.trap_lifetime?.u).toBe(null);
+    expect(low).toBeLessThan(500);
+    expect(low).toBeGreaterThan(50);
+    expect(high).toBe(null);
+    const open = "the lifetime in traps is not determined from above";
+    expect(verdict.reasons.find(({ code }) => code === "parameters-not-told-apart")?.text).toContain(open);
+    expect(renderTerminal(analysis, { colour: false }).replace(/\s+/g, " ")).toContain(open);
   });
 
   it("stands beside the widths on a plain recording where it is asked for", () => {

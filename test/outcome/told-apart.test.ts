@@ -21,6 +21,7 @@ function fitted(a: Name, b: Name, r: number): CandidateFit {
     converged: true,
     reason: "a maximum was reached",
     iterations: 3,
+    held: [],
     goodness: { chi2: 50, degreesOfFreedom: 50, pValue: 0.5 },
     aicc: 0,
     weight: 1,

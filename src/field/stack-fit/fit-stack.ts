@@ -1,7 +1,8 @@
 import { invertSymmetric, solveSymmetric } from "../../numerics/linear-algebra.ts";
+import { endlessLifetime, holding, isEndless } from "./endless.ts";
 import type { Name, Values } from "./parameters.ts";
 import { valuesOf } from "./parameters.ts";
-import { deviance, naturalSize, scoreStack } from "./score-stack.ts";
+import { deviance, naturalSize, type StackScore, scoreStack } from "./score-stack.ts";
 import type { StackData } from "./stack-data.ts";
 
 export interface StackOptimum {
@@ -14,6 +15,8 @@ export interface StackOptimum {
   readonly converged: boolean;
   readonly reason: string;
   readonly iterations: number;
+  /** Parameters at the end of what they can be, where the likelihood still rises: the data set them no bound there. */
+  readonly held: readonly Name[];
 }
 
 /** A fit that is going anywhere gets there in six to ten. */
@@ -37,7 +40,7 @@ export function fitStack(data: StackData, names: readonly Name[], start: Values)
   let iterations = 0;
   let reason = "the step limit was reached";
   let converged = false;
-  let { score, information } = scoreStack(data, names, p);
+  let { score, information, held } = scoreWithin(data, names, p);
   while (iterations < MOST_STEPS) {
     iterations++;
     const left = stepLength(information, score, n);
@@ -54,10 +57,14 @@ export function fitStack(data: StackData, names: readonly Name[], start: Values)
       break;
     }
     ({ p, cost, damping } = next);
-    ({ score, information } = scoreStack(data, names, p));
+    ({ score, information, held } = scoreWithin(data, names, p));
   }
   const covariance = information.slice();
   const determined = invertSymmetric(covariance, n);
+  for (const name of held) {
+    const i = names.indexOf(name);
+    covariance[i * n + i] = p[i]! ** 2;
+  }
   if (!determined) reason = "the data do not determine every parameter";
   return {
     names,
@@ -67,7 +74,18 @@ export function fitStack(data: StackData, names: readonly Name[], start: Values)
     converged: converged && determined,
     reason,
     iterations,
+    held,
   };
+}
+
+function scoreWithin(
+  data: StackData,
+  names: readonly Name[],
+  p: Float64Array,
+): StackScore & { held: readonly Name[] } {
+  const found = scoreStack(data, names, p);
+  if (!isEndless(data, names, p, found)) return { ...found, held: [] };
+  return { ...holding(found, names.indexOf("trap_lifetime")), held: ["trap_lifetime"] };
 }
 
 /** √(sᵀI⁻¹s): the undamped step in standard deviations; null where the information is singular. */
@@ -103,7 +121,7 @@ function descend(
     const step = score.slice();
     if (!solveSymmetric(damped, n, step)) continue;
     const trial = p.map((value, i) => value + step[i]!);
-    keepPossible(names, p, trial);
+    keepPossible(data, names, p, trial);
     const trialCost = tryDeviance(data, names, trial);
     if (trialCost !== null && trialCost < cost)
       return { p: trial, cost: trialCost, damping: Math.max(lambda / 10, 1e-7) };
@@ -123,11 +141,12 @@ function tryDeviance(data: StackData, names: readonly Name[], p: Float64Array): 
 }
 
 /** Positive quantities shrink to a third of themselves at most in one step; rates may go a little below zero. */
-function keepPossible(names: readonly Name[], from: Float64Array, to: Float64Array): void {
+function keepPossible(data: StackData, names: readonly Name[], from: Float64Array, to: Float64Array): void {
   const tau = valuesOf(names, from).tau!;
   for (const [i, name] of names.entries()) {
     const positive = ["amplitude", "s", "s_xx", "s_yy", "tau", "trap_lifetime"].includes(name);
     if (positive) to[i] = Math.min(Math.max(to[i]!, from[i]! / 3), 5 * from[i]!);
+    if (name === "trap_lifetime") to[i] = Math.min(to[i]!, endlessLifetime(data));
     if (name === "background") to[i] = Math.max(to[i]!, 1e-7);
     if (name === "k_n0" || name === "capture") to[i] = Math.max(to[i]!, -0.3 / tau);
   }

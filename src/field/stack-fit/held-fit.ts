@@ -1,7 +1,8 @@
 import { solveSymmetric } from "../../numerics/linear-algebra.ts";
+import { endlessLifetime, holding, isEndless } from "./endless.ts";
 import type { StackOptimum } from "./fit-stack.ts";
 import type { Name } from "./parameters.ts";
-import { deviance, scoreStack } from "./score-stack.ts";
+import { deviance, type StackScore, scoreStack } from "./score-stack.ts";
 import type { StackData } from "./stack-data.ts";
 
 /** A whole-stack fit with a linear combination gᵀp of its parameters held. */
@@ -48,6 +49,7 @@ export function heldFit(data: StackData, fit: StackOptimum, gradient: readonly n
       names,
       from.p,
       along.map((each) => (each * way) / variance),
+      endlessLifetime(data),
     );
     // a parameter held alone goes where it is asked to, below zero or far above
     if (only >= 0) p[only] = x / gradient[only]!;
@@ -80,7 +82,7 @@ function refit(
   if (cost === null) return null;
   let best = { p: start, deviance: cost };
   for (let count = 0; count < MOST_STEPS; count++) {
-    const { score, information } = scoreStack(data, names, best.p);
+    const { score, information } = scoreWithin(data, names, best.p, gradient);
     const full = heldStep(information, score, gradient, 0);
     const promised = full === null ? Number.POSITIVE_INFINITY : dot(full, score);
     if (promised < LEFT) return { p: best.p, deviance: best.deviance - promised };
@@ -89,6 +91,18 @@ function refit(
     best = next;
   }
   return best;
+}
+
+/** A lifetime in traps that has no end stays there, as in `fitStack`, unless it is what is held. */
+function scoreWithin(
+  data: StackData,
+  names: readonly Name[],
+  p: Float64Array,
+  gradient: readonly number[],
+): StackScore {
+  const found = scoreStack(data, names, p);
+  const i = names.indexOf("trap_lifetime");
+  return i >= 0 && gradient[i] === 0 && isEndless(data, names, p, found) ? holding(found, i) : found;
 }
 
 /** The least damped step that improves the fit; null where none does. */
@@ -101,7 +115,7 @@ function descend(
   for (const damping of DAMPINGS) {
     const delta = stepOf(damping);
     if (delta === null) continue;
-    const p = step(names, best.p, delta);
+    const p = step(names, best.p, delta, endlessLifetime(data));
     const cost = costOf(data, names, p);
     if (cost !== null && cost < best.deviance) return { p, deviance: cost };
   }
@@ -140,7 +154,12 @@ function dot(a: ArrayLike<number>, b: ArrayLike<number>): number {
  * p + δ on paths of that slope: what must stay positive moves by its logarithm, lifetimes by their rates, in which the
  * likelihood is nearer to normal.
  */
-function step(names: readonly Name[], p: Float64Array, delta: ArrayLike<number>): Float64Array {
+function step(
+  names: readonly Name[],
+  p: Float64Array,
+  delta: ArrayLike<number>,
+  endless: number,
+): Float64Array {
   const tau = p[names.indexOf("tau")]!;
   return p.map((value, i) => {
     const name = names[i]!;
@@ -151,7 +170,10 @@ function step(names: readonly Name[], p: Float64Array, delta: ArrayLike<number>)
     }
     if (name === "background") return Math.max(value + delta[i]!, LEAST_BACKGROUND);
     const share = delta[i]! / value;
-    if (LIFETIMES.includes(name)) return value / (1 - Math.min(Math.max(share, -3), 0.75));
+    if (LIFETIMES.includes(name)) {
+      const to = value / (1 - Math.min(Math.max(share, -3), 0.75));
+      return name === "trap_lifetime" ? Math.min(to, Math.max(value, endless)) : to;
+    }
     if (POSITIVE.includes(name)) return value * Math.exp(Math.min(Math.max(share, -1), 1));
     return value + delta[i]!;
   });
