@@ -6,7 +6,7 @@ import { type Medium, removalRate } from "./medium.ts";
 interface Snapshot {
   age: number;
   readonly free: Float64Array;
-  /** FT of ∇·D∇n − k n². */
+  /** FT of ∇·D(1 + b n)∇n − k n². */
   readonly freeGain: Float64Array;
   readonly caught: Float64Array;
 }
@@ -98,9 +98,11 @@ export class DenseLight {
     transform.toSpectrum(free, snapshot.free);
     for (let i = 0; i < free.length; i++) this.#squares[i] = free[i]! * free[i]!;
     transform.toSpectrum(this.#squares, this.#squaresSpectrum);
-    const k = this.#medium.annihilation;
+    const { annihilation, repulsion } = this.#medium;
     for (let i = 0; i < snapshot.free.length; i++) {
-      snapshot.freeGain[i] = -this.#spreading[i >> 1]! * snapshot.free[i]! - k * this.#squaresSpectrum[i]!;
+      const spreading = this.#spreading[i >> 1]!;
+      const meeting = annihilation + 0.5 * repulsion * spreading;
+      snapshot.freeGain[i] = -spreading * snapshot.free[i]! - meeting * this.#squaresSpectrum[i]!;
     }
     snapshot.caught.set(caught);
   }

@@ -8,10 +8,13 @@ import {
   type Start,
   spreadCovariance,
 } from "./medium.ts";
+import { PushedStep } from "./pushed-step.ts";
 import { Transform } from "./transform.ts";
 
 /** Relative error = ERROR_SCALE·(rates·step)⁴, measured on spots with k n₀ τ from 0.3 to 30 and c τ up to 2. */
 const ERROR_SCALE = 8e-3;
+/** Longest step with repulsion in units of 1/(b n·q·Dq) of the finest mode: Runge–Kutta's 2.78, less a margin. */
+const STABLE = 2.2;
 
 /**
  * The densities n and m of a spot on a periodic grid, moved forward in time.
@@ -20,7 +23,7 @@ const ERROR_SCALE = 8e-3;
  * diffusion, decay and capture, exact in Fourier space, half a step of annihilation. Annihilation is taken in the frame
  * that decays with γ, where its closed form makes a uniform field exact. The error is of second order in the step;
  * one whole and two half steps, combined as (4·two − one)/3, take it to fourth order (Richardson's extrapolation).
- * Without annihilation a step of any length is exact and one suffices.
+ * Without annihilation a step of any length is exact and one suffices. With repulsion see PushedStep.
  */
 export class Evolution {
   readonly grid: Grid;
@@ -36,6 +39,7 @@ export class Evolution {
   readonly #coarseFree: Float64Array;
   readonly #coarseCaught: Float64Array;
   readonly #flows = new Map<number, LinearFlow>();
+  readonly #pushed: PushedStep | null;
   #age = 0;
   #peak: number;
 
@@ -52,6 +56,7 @@ export class Evolution {
     this.#coarseFree = new Float64Array(this.free.length);
     this.#coarseCaught = this.transform.spectrum();
     this.#peak = peakDensity(start);
+    this.#pushed = medium.repulsion === 0 ? null : new PushedStep(medium, grid, this.transform);
   }
 
   /** Time since the last pulse, ns. */
@@ -98,6 +103,11 @@ export class Evolution {
   }
 
   #step(h: number): void {
+    if (this.#pushed !== null) {
+      this.#pushed.take(h, this.#flowOver(h / 2), this.#flowOver(h), this.free, this.caught);
+      this.#peak = largestOf(this.free);
+      return;
+    }
     if (this.#medium.annihilation === 0) {
       this.#split(h, this.free, this.caught);
       return;
@@ -149,25 +159,32 @@ export class Evolution {
   }
 
   #longestStep(): number {
-    const { meeting, spreading } = this.#rates();
+    const { meeting, spreading, pushing } = this.#rates();
+    const colliding = meeting + pushing;
     const other = spreading + this.#medium.capture;
-    const fourth = meeting * other * (meeting + other) ** 2;
-    return fourth === 0 ? Infinity : (this.#tolerance / (ERROR_SCALE * fourth)) ** 0.25;
+    const fourth = colliding * other * (colliding + other) ** 2;
+    const accurate = fourth === 0 ? Infinity : (this.#tolerance / (ERROR_SCALE * fourth)) ** 0.25;
+    if (this.#pushed === null) return accurate;
+    return Math.min(accurate, STABLE / (this.#medium.repulsion * this.#peak * this.#pushed.fastest));
   }
 
   #longestWatchedStep(): number {
-    const { meeting, spreading } = this.#rates();
-    const interpolated = (30 * this.#tolerance) ** 0.25 / (meeting + spreading + this.#medium.capture);
+    const { meeting, spreading, pushing } = this.#rates();
+    const changing = meeting + spreading + pushing + this.#medium.capture;
+    const interpolated = (30 * this.#tolerance) ** 0.25 / changing;
     return Math.min(this.#longestStep(), interpolated);
   }
 
-  /** Relative changes of the density at the centre by annihilation, k n, and by diffusion, tr(DΣ⁻¹). */
-  #rates(): { meeting: number; spreading: number } {
-    const { diffusion, annihilation } = this.#medium;
+  /**
+   * Relative changes of the density at the centre by annihilation, k n, by diffusion, tr(DΣ⁻¹), and by repulsion,
+   * b n·tr(DΣ⁻¹).
+   */
+  #rates(): { meeting: number; spreading: number; pushing: number } {
+    const { diffusion, annihilation, repulsion } = this.#medium;
     const [dxx, dxy, dyy] = diffusion;
     const sigma = spreadCovariance(this.#start.covariance, diffusion, this.#age);
     const spreading = Math.abs(dxx * sigma[2] - 2 * dxy * sigma[1] + dyy * sigma[0]) / determinant(sigma);
-    return { meeting: annihilation * this.#peak, spreading };
+    return { meeting: annihilation * this.#peak, spreading, pushing: repulsion * this.#peak * spreading };
   }
 }
 

@@ -113,14 +113,15 @@ function pieces(from: number, to: number, period: number | null): Piece[] {
 
 /**
  * How fast the light changes at an age, 1/ns: decay and capture, spreading, tr(DΣ(t)⁻¹), and annihilation, which no
- * spot outruns: k n ≤ 1/(1/(k n₀) + t).
+ * spot outruns: k n ≤ 1/(1/(k n₀) + t). Repulsion adds b n₀ at most to spreading.
  */
 export function changeRate(medium: Medium, start: Start): (age: number) => number {
   const [dxx, dxy, dyy] = medium.diffusion;
   const meeting = medium.annihilation * peakDensity(start);
+  const push = 1 + Math.max(medium.repulsion * peakDensity(start), 0);
   return (age) => {
     const [xx, xy, yy] = spreadCovariance(start.covariance, medium.diffusion, age);
     const spreading = Math.abs(dxx * yy - 2 * dxy * xy + dyy * xx) / determinant([xx, xy, yy]);
-    return removalRate(medium) + 2 * spreading + meeting / (1 + meeting * age);
+    return removalRate(medium) + 2 * push * spreading + meeting / (1 + meeting * age);
   };
 }

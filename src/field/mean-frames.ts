@@ -6,7 +6,7 @@ import { steppedLight } from "./stepped-light.ts";
 
 /**
  * The light that a recording would hold without noise, by the quickest exact way: Gaussian algebra for plain
- * diffusion, closed forms per Fourier mode with capture, time steps with annihilation.
+ * diffusion, closed forms per Fourier mode with capture, time steps with annihilation or repulsion.
  *
  * @param medium what the excitons live in
  * @param start the spot one pulse makes; its unit of amount is the frames' unit
@@ -24,7 +24,8 @@ export function meanFrames(
   if (recording.period !== null && endless) {
     throw new RangeError("Excitons that never end pile up over the pulses: give a lifetime or no period.");
   }
-  if (medium.annihilation > 0) return steppedLight(medium, start, recording, accuracy);
+  if (medium.annihilation > 0 || medium.repulsion > 0)
+    return steppedLight(medium, start, recording, accuracy);
   if (medium.capture > 0) return spectralLight(medium, start, recording, accuracy);
   return gaussianLight(medium, start, recording);
 }

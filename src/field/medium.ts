@@ -3,17 +3,21 @@ import type { Covariance } from "../frame/spot.ts";
 /**
  * What the excitons live in:
  *
- *     ∂n/∂t = ∇·D∇n − n/τ − k n² − c n        free excitons, density n
+ *     ∂n/∂t = ∇·D(1 + b n)∇n − n/τ − k n² − c n        free excitons, density n
  *     ∂m/∂t = c n − m/τ_m                     caught excitons, which stay where they are
  *     light = n + ε m
  *
- * k is defined by dn/dt = −k n² (papers that write −½γn² have γ = 2k).
+ * k is defined by dn/dt = −k n² (papers that write −½γn² have γ = 2k). b = u₀/k_BT: excitons with a dipole moment
+ * repel each other with the energy u₀n and drift down its slope, a flux −D·n·∇(u₀n)/k_BT on top of −D∇n (Ivanov,
+ * Europhys. Lett. 59, 586, 2002, cited from memory).
  */
 export interface Medium {
   /** D, µm²/ns. A trace uses all three too: excitons also leave the slit sideways. */
   readonly diffusion: Covariance;
   /** τ, ns; Infinity for excitons that do not end by themselves. */
   readonly lifetime: number;
+  /** b, area per exciton: b times a density of the start's unit is by how much of itself D is larger there. */
+  readonly repulsion: number;
   /** k, area per time and exciton: k times a density of the start's unit is a rate in 1/ns. */
   readonly annihilation: number;
   /** c, 1/ns */
@@ -32,9 +36,17 @@ export interface Start {
   readonly covariance: Covariance;
 }
 
-/** Plain diffusion with one lifetime: no annihilation, no traps. */
+/** Plain diffusion with one lifetime: no repulsion, no annihilation, no traps. */
 export function plainMedium(diffusion: Covariance, lifetime: number): Medium {
-  return { diffusion, lifetime, annihilation: 0, capture: 0, trapLight: 0, trapLifetime: Infinity };
+  return {
+    diffusion,
+    lifetime,
+    repulsion: 0,
+    annihilation: 0,
+    capture: 0,
+    trapLight: 0,
+    trapLifetime: Infinity,
+  };
 }
 
 /** γ = 1/τ + c: the rate at which free excitons go without meeting each other, 1/ns. */

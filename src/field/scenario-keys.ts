@@ -44,6 +44,7 @@ export const SCENARIO_RULES = {
   "motion.major": { kind: "diffusion", example: '"0.6 cm^2/s"', least: "zero" },
   "motion.minor": { kind: "diffusion", example: '"0.3 cm^2/s"', least: "zero" },
   "motion.angle": { kind: "angle", example: '"30 deg"', least: "any" },
+  "motion.repulsion": { kind: "number", example: "1", least: "zero" },
   "motion.sigma0": { kind: "length", example: '"0.35 um"', least: "above-zero" },
   "motion.fwhm": { kind: "length", example: '"0.82 um"', least: "above-zero" },
   "motion.sigma0_minor": { kind: "length", example: '"0.30 um"', least: "above-zero" },

@@ -31,6 +31,11 @@ const LIMITS: readonly { where: string; wrong: string; beyond: (scenario: Scenar
       Math.max(start.covariance[0], start.covariance[2]) > (1e3 * width * pixelX) ** 2,
   },
   {
+    where: "motion.repulsion",
+    wrong: "is more than 100 thermal energies; u₀n₀/k_BT of dipolar excitons stays far below",
+    beyond: ({ repulsion }) => repulsion > 100,
+  },
+  {
     where: "life.annihilation",
     wrong: "is more than a thousand times the rate of decay; check its unit",
     beyond: ({ annihilationRate, medium }) => annihilationRate * medium.lifetime > 1e3,

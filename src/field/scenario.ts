@@ -31,6 +31,8 @@ export interface Scenario {
   readonly start: Start;
   /** k n₀ of one pulse, 1/ns. */
   readonly annihilationRate: number;
+  /** β = u₀n₀/k_BT of one pulse. */
+  readonly repulsion: number;
   readonly recording: Recording;
   readonly acquisition: Acquisition;
   /** The scenario's acquisition keys as written, by dotted name. */
@@ -75,6 +77,7 @@ export function readScenario(text: string, file: string): Scenario {
   }
   const start: Start = { amount: 1, covariance: startCovariance(values) };
   const annihilationRate = values.get("life.annihilation") ?? 0;
+  const repulsion = values.get("motion.repulsion") ?? 0;
   const scenario: Scenario = {
     file,
     kind,
@@ -84,9 +87,10 @@ export function readScenario(text: string, file: string): Scenario {
     photons: values.need("recording.photons"),
     background: values.get("recording.background") ?? 0,
     seed: values.get("recording.seed") ?? 1,
-    medium: mediumOf(values, annihilationRate / peakDensity(start)),
+    medium: mediumOf(values, annihilationRate / peakDensity(start), repulsion / peakDensity(start)),
     start,
     annihilationRate,
+    repulsion,
     recording: recordingOf(values, acquisition, width, height),
     acquisition,
     acquisitionSettings,
@@ -104,7 +108,7 @@ export function readScenario(text: string, file: string): Scenario {
   return scenario;
 }
 
-function mediumOf(values: ScenarioValues, annihilation: number): Medium {
+function mediumOf(values: ScenarioValues, annihilation: number, repulsion: number): Medium {
   const capture = values.get("life.capture") ?? 0;
   for (const key of ["life.trap_light", "life.trap_lifetime"] as const) {
     if (values.has(key) && capture === 0) throw values.fault(key, "stands without life.capture");
@@ -112,6 +116,7 @@ function mediumOf(values: ScenarioValues, annihilation: number): Medium {
   return {
     diffusion: diffusionOf(values),
     lifetime: values.need("life.lifetime"),
+    repulsion,
     annihilation,
     capture,
     trapLight: capture === 0 ? 0 : (values.get("life.trap_light") ?? 1),

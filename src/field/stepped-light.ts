@@ -3,14 +3,15 @@ import { develop, developed } from "./develop.ts";
 import { Evolution } from "./evolution.ts";
 import { byFrame, changeRate, type Exposure, exposures } from "./exposure.ts";
 import { gridFor } from "./grid.ts";
-import type { Medium, Start } from "./medium.ts";
+import { type Medium, removalRate, type Start } from "./medium.ts";
+import { pushedTime } from "./pushed-spread.ts";
 import type { Accuracy, MeanFrames, Recording } from "./recording.ts";
 import { lastAge } from "./spectral-light.ts";
 
 const MOST_PULSES = 500;
 
 /**
- * Mean frames with annihilation, stepped in time. With a period the pulses are followed until each leaves the same
+ * Mean frames with annihilation or repulsion, stepped in time. With a period the pulses are followed until each leaves the same
  * density behind; every pulse brings the same start.
  */
 export function steppedLight(
@@ -19,7 +20,7 @@ export function steppedLight(
   recording: Recording,
   accuracy: Accuracy,
 ): MeanFrames {
-  const grid = gridFor(start.covariance, medium.diffusion, lastAge(medium, recording), accuracy);
+  const grid = gridFor(start.covariance, medium.diffusion, spreadTime(medium, start, recording), accuracy);
   const evolution = new Evolution(medium, start, grid, accuracy.tolerance);
   if (recording.period !== null) settle(evolution, recording.period, accuracy.tolerance * 1e-3);
   const { transform } = evolution;
@@ -58,6 +59,13 @@ export function steppedLight(
     finish(frame, spectra);
   }
   return developed(recording, (frame) => done.get(frame) ?? null);
+}
+
+/** Time of plain diffusion that spreads a spot as far as it gets at its last age, the push of older pulses included. */
+function spreadTime(medium: Medium, start: Start, recording: Recording): number {
+  const { period } = recording;
+  const pulses = period === null ? 1 : -1 / Math.expm1(-removalRate(medium) * period);
+  return pushedTime(medium, { ...start, amount: pulses * start.amount }, lastAge(medium, recording));
 }
 
 interface Spectra {

@@ -12,7 +12,7 @@ export interface Truth {
   readonly schema: "gleamwalk.truth/1";
   readonly scenario: string;
   readonly seed: number;
-  /** Half the tensor's trace on a map, D_xx on a trace. */
+  /** Half the tensor's trace on a map, D_xx on a trace; of few excitons, where they repel each other. */
   readonly diffusion_coefficient_cm2_per_s: number;
   readonly tensor_cm2_per_s: Principal;
   /** τ of the free excitons. */
@@ -20,6 +20,8 @@ export interface Truth {
   /** √(½⟨x²⟩ at the end of life), mean over the axes of a map. */
   readonly diffusion_length_um: number;
   readonly mobility_cm2_per_v_s: number | null;
+  /** β = u₀n₀/k_BT at the centre right after a pulse onto an empty sample: D is (1 + β) times as large there. */
+  readonly repulsion: number;
   readonly annihilation_k_n0_per_ns: number;
   readonly capture_per_ns: number;
   readonly trap_light: number | null;
@@ -73,6 +75,7 @@ export function truthOf(scenario: Scenario, light: readonly FrameLight[]): Truth
     diffusion_length_um: Math.sqrt(d * moving),
     mobility_cm2_per_v_s:
       temperature === null ? null : (d * CM2_PER_S * (elementaryCharge / boltzmann)) / temperature,
+    repulsion: scenario.repulsion,
     annihilation_k_n0_per_ns: scenario.annihilationRate,
     capture_per_ns: medium.capture,
     trap_light: caught ? medium.trapLight : null,

@@ -181,6 +181,7 @@ describe("Evolution against finite volumes in SciPy", () => {
     const medium: Medium = {
       diffusion: [d, 0, d],
       lifetime: tau,
+      repulsion: 0,
       annihilation: k,
       capture: c,
       trapLight: 1,

@@ -216,6 +216,7 @@ describe("capture", () => {
   const medium: Medium = {
     diffusion: [0.05, 0, 0.05],
     lifetime: 6,
+    repulsion: 0,
     annihilation: 0,
     capture: 0.3,
     trapLight: 0.5,

@@ -23,7 +23,7 @@ export function memory(removal: number): number {
  */
 export function steadyFlow(shape: Shape, timeline: Timeline, period: number): Flow {
   let flow = flowOf(shape, timeline, null);
-  if (timeline.rates.annihilation === 0) return flow;
+  if (timeline.rates.annihilation === 0 && timeline.rates.repulsion === 0) return flow;
   let background = left(flow, period);
   for (let round = 0; round < MOST_ROUNDS; round++) {
     flow = flowOf(shape, timeline, background);

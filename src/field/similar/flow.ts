@@ -1,3 +1,4 @@
+import { PushedFlow } from "./pushed-flow.ts";
 import type { Shape } from "./shape.ts";
 import type { Timeline } from "./timeline.ts";
 
@@ -5,8 +6,6 @@ import type { Timeline } from "./timeline.ts";
 export interface Flow {
   readonly shape: Shape;
   readonly timeline: Timeline;
-  /** Node values, one state a time. */
-  readonly states: readonly Float64Array[];
   /** Coefficients a_k, one array a time; a_0 is the share of excitons that annihilation has left. */
   readonly coefficients: readonly Float64Array[];
 }
@@ -19,11 +18,12 @@ export type Background = readonly Float64Array[];
  *
  * Strang's splitting (SIAM J. Numer. Anal. 5, 506, 1968), diffusion exact per coefficient and annihilation exact per
  * node, one whole and two half steps combined as (4·two − one)/3 to fourth order. Without annihilation v stays the
- * spreading Gaussian and there is nothing to do; without diffusion the steps are exact.
+ * spreading Gaussian and there is nothing to do; without diffusion the steps are exact. With repulsion see PushedFlow.
  */
 export function flowOf(shape: Shape, timeline: Timeline, background: Background | null): Flow {
+  const { annihilation, repulsion } = timeline.rates;
+  if (repulsion !== 0) return { shape, timeline, coefficients: pushed(shape, timeline, background) };
   const states = [shape.start()];
-  const { annihilation } = timeline.rates;
   for (let i = 1; i < timeline.size; i++) {
     const before = states[i - 1]!;
     states.push(annihilation === 0 ? before : stepped(shape, timeline, background, i - 1, before));
@@ -33,7 +33,19 @@ export function flowOf(shape: Shape, timeline: Timeline, background: Background 
     shape.toCoefficients(state, out);
     return out;
   });
-  return { shape, timeline, states, coefficients };
+  return { shape, timeline, coefficients };
+}
+
+function pushed(shape: Shape, timeline: Timeline, background: Background | null): Float64Array[] {
+  const flow = new PushedFlow(shape, timeline);
+  const first = new Float64Array(shape.size);
+  shape.toCoefficients(shape.start(), first);
+  const coefficients: Float64Array[] = [first];
+  for (let i = 0; i + 1 < timeline.size; i++) {
+    const left = background === null ? null : (t: number) => backgroundBetween(timeline, background, i, t);
+    coefficients.push(flow.advance(coefficients[i]!, timeline.times[i]!, timeline.times[i + 1]!, left));
+  }
+  return coefficients;
 }
 
 function stepped(

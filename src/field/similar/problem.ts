@@ -10,6 +10,10 @@ export interface SimilarProblem {
   readonly diffusion: Covariance;
   /** τ, ns. */
   readonly lifetime: number;
+  /**
+   * β = u₀n₀/k_BT at the peak right after a pulse onto an empty sample: there D is (1 + β) times as large (see `Medium`).
+   */
+  readonly repulsion: number;
   /** k·n₀ at the peak right after a pulse onto an empty sample, 1/ns. */
   readonly annihilation: number;
   /** c, 1/ns. */

@@ -15,8 +15,13 @@ export interface Shape {
   /** A Gaussian of peak 1 at s = 1. */
   start(): Float64Array;
   toCoefficients(state: Float64Array, out: Float64Array): void;
+  toState(coefficients: Float64Array, out: Float64Array): void;
   /** Diffusion from the scales s to the scales `to`: each coefficient shrinks by its own (s/to)^k. */
   diffuse(state: Float64Array, from: readonly [number, number], to: readonly [number, number]): void;
+  /** The same for coefficients. */
+  damp(coefficients: Float64Array, from: readonly [number, number], to: readonly [number, number]): void;
+  /** Adds Σ_i factors_i·s_i·∂_i² of what has the coefficients `a`, as coefficients. */
+  addCurvature(a: Float64Array, factors: readonly [number, number], out: Float64Array): void;
 }
 
 export function shapeOf(round: boolean, size: number): Shape {
@@ -46,16 +51,31 @@ class RoundShape implements Shape {
   }
 
   diffuse(state: Float64Array, from: readonly [number, number], to: readonly [number, number]): void {
+    this.toCoefficients(state, this.#work);
+    this.damp(this.#work, from, to);
+    this.toState(this.#work, state);
+  }
+
+  toState(coefficients: Float64Array, out: Float64Array): void {
     const n = this.size;
     const { vectors } = this.basis;
-    this.toCoefficients(state, this.#work);
-    state.fill(0);
-    let damping = 1;
+    out.fill(0);
     for (let k = 0; k < n; k++) {
-      const a = damping * this.#work[k]!;
-      for (let j = 0; j < n; j++) state[j] = state[j]! + a * vectors[k * n + j]!;
+      const a = coefficients[k]!;
+      for (let j = 0; j < n; j++) out[j] = out[j]! + a * vectors[k * n + j]!;
+    }
+  }
+
+  damp(coefficients: Float64Array, from: readonly [number, number], to: readonly [number, number]): void {
+    let damping = 1;
+    for (let k = 0; k < this.size; k++) {
+      coefficients[k] = coefficients[k]! * damping;
       damping *= from[0] / to[0];
     }
+  }
+
+  addCurvature(a: Float64Array, [factor]: readonly [number, number], out: Float64Array): void {
+    for (let k = 0; k + 1 < this.size; k++) out[k + 1] = out[k + 1]! + factor * this.basis.raised(k) * a[k]!;
   }
 }
 
@@ -88,9 +108,20 @@ class PlanarShape implements Shape {
   }
 
   diffuse(state: Float64Array, from: readonly [number, number], to: readonly [number, number]): void {
-    const n = this.basis.size;
     const a = this.#coefficients;
     this.toCoefficients(state, a);
+    this.damp(a, from, to);
+    this.toState(a, state);
+  }
+
+  toState(coefficients: Float64Array, out: Float64Array): void {
+    const n = this.basis.size;
+    multiply(this.#back, coefficients, n, this.#work);
+    multiply(this.#work, this.basis.vectors, n, out);
+  }
+
+  damp(a: Float64Array, from: readonly [number, number], to: readonly [number, number]): void {
+    const n = this.basis.size;
     let alongX = 1;
     for (let k = 0; k < n; k++) {
       let damping = alongX;
@@ -100,8 +131,18 @@ class PlanarShape implements Shape {
       }
       alongX *= from[0] / to[0];
     }
-    multiply(this.#back, a, n, this.#work);
-    multiply(this.#work, this.basis.vectors, n, state);
+  }
+
+  addCurvature(a: Float64Array, [first, second]: readonly [number, number], out: Float64Array): void {
+    const n = this.basis.size;
+    for (let k = 0; k < n; k++) {
+      const along = first * this.basis.raised(k);
+      for (let l = 0; l < n; l++) {
+        const value = a[k * n + l]!;
+        if (k + 1 < n) out[(k + 1) * n + l] = out[(k + 1) * n + l]! + along * value;
+        if (l + 1 < n) out[k * n + l + 1] = out[k * n + l + 1]! + second * this.basis.raised(l) * value;
+      }
+    }
   }
 }
 

@@ -6,6 +6,8 @@ export interface Rates {
   readonly diffusion: readonly [number, number];
   /** λ = 1/τ + c */
   readonly removal: number;
+  /** β = u₀n₀/k_BT */
+  readonly repulsion: number;
   /** κ = k n₀ */
   readonly annihilation: number;
   readonly capture: number;
@@ -26,8 +28,9 @@ const BARYCENTRIC = LOBATTO.map((_, j) => (j % 2 === 0 ? 1 : -1) * (j === 0 || j
 /**
  * The times at which the density is known, and how to read it, or what it has left in the traps, at any other time.
  *
- * Spreading slows as 1/s(t), s = 1 + 2dt, and annihilation as 1/(1 + κy), y = ∫e^(−λt)dt, so the clock
- * θ = ½ ln s₁ + ½ ln s₂ + ln(1 + κy) runs evenly with what happens. Where spreading is slow, annihilation dies with
+ * Spreading slows as 1/s(t), s = 1 + 2dt, annihilation as 1/(1 + κy), y = ∫e^(−λt)dt, and repulsion, which bends the
+ * profile at a rate of some 4βd, alike: the clock θ = ½ ln s₁ + ½ ln s₂ + ln(1 + (κ + 4βd)y) runs evenly with what
+ * happens. Where spreading is slow, annihilation dies with
  * the lifetime before spreading takes over: there a share of ln(1 + λt) keeps the clock running. Panels of equal length on it hold 7
  * Chebyshev–Lobatto nodes each; between them v = e^(λt)·n is a polynomial in θ.
  */
@@ -74,15 +77,33 @@ export class Timeline {
   clock(t: number): number {
     const [a, b] = this.scales(t);
     const spreading = 0.5 * (Math.abs(Math.log(a)) + Math.abs(Math.log(b)));
-    const { annihilation, removal } = this.rates;
-    if (annihilation === 0) return spreading;
-    return spreading + Math.log1p(annihilation * this.decayed(t)) + this.#handover * Math.log1p(removal * t);
+    const { annihilation, repulsion, removal, diffusion } = this.rates;
+    if (annihilation === 0 && repulsion === 0) return spreading;
+    // how fast the profile changes its shape
+    const bending = annihilation + 2 * Math.abs(repulsion) * (diffusion[0] + diffusion[1]);
+    return spreading + Math.log1p(bending * this.decayed(t)) + this.#handover * Math.log1p(removal * t);
   }
 
-  /** s = 1 + 2dt along both axes: the variances without annihilation. */
+  /**
+   * s along both axes, the widths² of the basis: 1 + 2dt, the variances of plain diffusion. Repulsion adds
+   * (ds/dt = 2d + ½βd·e^(−λt)/s for a round Gaussian); s² = (1 + 2dt)² + βd·y is close enough for a basis.
+   */
   scales(t: number): readonly [number, number] {
-    const [a, b] = this.rates.diffusion;
-    return [1 + 2 * a * t, 1 + 2 * b * t];
+    const { diffusion, repulsion } = this.rates;
+    const [a, b] = [1 + 2 * diffusion[0] * t, 1 + 2 * diffusion[1] * t];
+    if (repulsion === 0) return [a, b];
+    const push = repulsion * this.decayed(t);
+    return [Math.sqrt(a * a + diffusion[0] * push), Math.sqrt(b * b + diffusion[1] * push)];
+  }
+
+  /** ds/dt along both axes. */
+  growth(t: number): readonly [number, number] {
+    const { diffusion, repulsion, removal } = this.rates;
+    const push = 0.5 * repulsion * Math.exp(-removal * t);
+    const s = this.scales(t);
+    const of = (axis: 0 | 1): number =>
+      (diffusion[axis] * (2 * (1 + 2 * diffusion[axis] * t) + push)) / s[axis];
+    return [of(0), of(1)];
   }
 
   /** y(t) = ∫₀ᵗ e^(−λt')dt'. */

@@ -36,6 +36,7 @@ export type Name =
   | "D_yy"
   | "tau"
   | "background"
+  | "repulsion"
   | "k_n0"
   | "capture"
   | "trap_lifetime";
@@ -57,6 +58,7 @@ export const UNITS: Readonly<Record<Name, string>> = {
   D_yy: "µm²/ns",
   tau: "ns",
   background: "photons/pixel",
+  repulsion: "1",
   k_n0: "1/ns",
   capture: "1/ns",
   trap_lifetime: "ns",
@@ -87,6 +89,7 @@ export function problemOf(data: StackData, v: Values): SimilarProblem {
     start,
     diffusion,
     lifetime: v.tau!,
+    repulsion: v.repulsion ?? 0,
     annihilation: v.k_n0 ?? 0,
     capture: v.capture ?? 0,
     trapLifetime: v.trap_lifetime ?? v.tau!,

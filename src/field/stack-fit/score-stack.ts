@@ -55,6 +55,8 @@ export function naturalSize(name: Name, v: Values): number {
     case "D_yy":
       return variance / v.tau!;
     case "k_n0":
+    case "repulsion":
+      return 1;
     case "capture":
       return 1 / v.tau!;
     case "tau":

@@ -11,7 +11,7 @@ const CENTRE = [1.53, 1.37] as const;
 
 function mediumOf(p: SimilarProblem) {
   const area = 2 * Math.PI * Math.sqrt(p.start[0] * p.start[2] - p.start[1] ** 2);
-  return { ...p, annihilation: p.annihilation * area };
+  return { ...p, repulsion: p.repulsion * area, annihilation: p.annihilation * area };
 }
 
 /** The Fourier solver, which integrates over pixels and slit exactly. */

@@ -6,6 +6,7 @@ export const ROUND: SimilarProblem = {
   start: [0.1, 0, 0.1],
   diffusion: [0.02, 0, 0.02],
   lifetime: 6,
+  repulsion: 0,
   annihilation: 0,
   capture: 0,
   trapLifetime: 15,
