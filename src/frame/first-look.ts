@@ -5,6 +5,9 @@ import type { Parameters } from "./kernel.ts";
 import { excludeFrom, findOutliers, medianAround } from "./outliers.ts";
 import type { NoiseLaw } from "./patch.ts";
 
+/** Standard deviations of a last step after which the fit is near enough for all that starts from it. */
+export const NEAR = 0.02;
+
 /**
  * Finds the one spot of a bright picture (the sum of many frames): a maximum of the smoothed picture, its width from
  * the area above half of the maximum, then maximum likelihood from a few widths around it.
@@ -41,7 +44,8 @@ export function firstLook(
   );
 
   for (const factor of [1, 0.3, 3]) {
-    const fit = fitPatch(kind, patch, startAt(kind, x, y, variance * factor, peak, background), noise);
+    const start = startAt(kind, x, y, variance * factor, peak, background);
+    const fit = fitPatch(kind, patch, start, noise, NEAR);
     if (fit.converged && fit.parameters[0]! ** 2 > 25 * fit.covariance[0]!) return fit;
   }
   return null;

@@ -14,8 +14,8 @@ export interface PatchFit {
 }
 
 const MOST_ITERATIONS = 40;
-/** Stop after a step shorter than this many standard deviations: δᵀIδ < (10⁻⁵)². */
-const SMALLEST_STEP2 = 1e-10;
+/** Stop after a step shorter than this many standard deviations. */
+const SMALLEST_STEP = 1e-5;
 /** Share of a step that is taken at least, before it is cut to what is within reach. */
 const SMALLEST_SHARE = 1 / 16;
 /** A spot narrower than this, in pixels², is a single pixel's noise, not a spot. */
@@ -33,8 +33,17 @@ const SMALLEST_VARIANCE = 0.02;
  * and the next share is 1/λ (Barzilai and Borwein, IMA J. Numer. Anal. 8 (1988) 141), never above 1.
  *
  * @param start parameters in pixels and photons, with Σ positive definite
+ * @param smallestStep the fit ends after a step shorter than this many standard deviations, √(δᵀIδ); the next one would
+ * be shorter by about the frame's relative noise
  */
-export function fitPatch(kind: "map" | "trace", patch: Patch, start: Parameters, noise: NoiseLaw): PatchFit {
+export function fitPatch(
+  kind: "map" | "trace",
+  patch: Patch,
+  start: Parameters,
+  noise: NoiseLaw,
+  smallestStep = SMALLEST_STEP,
+): PatchFit {
+  const enough = smallestStep ** 2;
   const layout = LAYOUT[kind];
   const n = layout.count;
   const evaluate = kind === "map" ? evaluateMap : evaluateTrace;
@@ -64,7 +73,7 @@ export function fitPatch(kind: "map" | "trace", patch: Patch, start: Parameters,
     share = left < 1 ? Math.min(Math.max(share / (1 - left), SMALLEST_SHARE), 1) : 1;
     share *= longestStep(kind, p, step);
     for (let i = 0; i < n; i++) p[i]! += share * step[i]!;
-    if (length2 < SMALLEST_STEP2 || pinned < SMALLEST_STEP2) {
+    if (length2 < enough || pinned < enough) {
       return {
         parameters: p,
         covariance,

@@ -1,7 +1,7 @@
 import { InputFault } from "../stack/fault.ts";
 import type { Stack } from "../stack/stack.ts";
 import { cutPatch, noiseLaw, PhotonReader, rectangleAround, sumFrames } from "./cut.ts";
-import { firstLook } from "./first-look.ts";
+import { firstLook, NEAR } from "./first-look.ts";
 import type { PatchFit } from "./fit-spot.ts";
 import { fitPatch } from "./fit-spot.ts";
 import type { Parameters } from "./kernel.ts";
@@ -144,7 +144,7 @@ function widestSpot(
   const rectangle = patchAround(kind, first.parameters, sigma, 2 * REACH, width, height);
   const patch = cutPatch(late, width, rectangle);
   excludeFrom(patch, insideOf(rectangle, glaring, width));
-  const fit = fitPatch(kind, patch, start, noise);
+  const fit = fitPatch(kind, patch, start, noise, NEAR);
   if (!fit.converged || fit.parameters[0]! ** 2 < 100 * fit.covariance[0]!) return sigma;
   const lateSigma = sigmas(kind, fit.parameters);
   const shift = (axis: number): number =>
@@ -197,21 +197,30 @@ function removeOuterOutliers(
   const limit = tolerance(noise, mean);
   let removed = 0;
   const inspect = (from: number, to: number): void => {
-    for (let i = from; i < to; i++) {
-      if (Math.abs(photons[i]! - mean) <= limit || !isOutlier(photons, width, height, i, noise, mean))
-        continue;
-      patch.outerCount--;
-      patch.outerSum -= photons[i]!;
-      removed++;
+    for (let i = nextStray(photons, from, to, mean, limit); i < to; ) {
+      if (isOutlier(photons, width, height, i, noise, mean)) {
+        patch.outerCount--;
+        patch.outerSum -= photons[i]!;
+        removed++;
+      }
+      i = nextStray(photons, i + 1, to, mean, limit);
     }
   };
-  for (let y = 0; y < height; y++) {
-    const row = y * width;
-    const crosses = y >= y0 && y < y0 + patch.rectangle.height;
-    inspect(row, crosses ? row + x0 : row + width);
-    if (crosses) inspect(row + x0 + patch.rectangle.width, row + width);
+  const bottom = y0 + patch.rectangle.height;
+  inspect(0, y0 * width);
+  for (let y = y0; y < bottom; y++) {
+    inspect(y * width, y * width + x0);
+    inspect(y * width + x0 + patch.rectangle.width, (y + 1) * width);
   }
+  inspect(bottom * width, height * width);
   return removed;
+}
+
+/** The first pixel of [from, to) that is further than `limit` from the mean, `to` where none is. */
+function nextStray(photons: Float64Array, from: number, to: number, mean: number, limit: number): number {
+  let i = from;
+  while (i < to && Math.abs(photons[i]! - mean) <= limit) i++;
+  return i;
 }
 
 function isFlat(photons: Float64Array): boolean {

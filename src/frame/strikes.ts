@@ -1,7 +1,6 @@
 import type { Parameters } from "./kernel.ts";
-import { isOutlier } from "./outliers.ts";
+import { findOutliers } from "./outliers.ts";
 import type { NoiseLaw, Patch } from "./patch.ts";
-import { pixelVariance } from "./patch.ts";
 
 /** Mean photons of one pixel of the patch by the spot `p`; pixels and photons. */
 export function meanAt(kind: "map" | "trace", patch: Patch, p: Parameters, index: number): number {
@@ -18,34 +17,8 @@ export function meanAt(kind: "map" | "trace", patch: Patch, p: Parameters, index
   return (p[0]! / (2 * Math.PI * Math.sqrt(determinant))) * Math.exp(-0.5 * q) + p[6]!;
 }
 
-/**
- * Finds hot, dead and struck pixels of a patch by {@link isOutlier} against the spot `p`.
- *
- * Only pixels that stand out of their neighbours along the row or the column, at half the tolerance, are looked at:
- * the others cannot stand out of all eight.
- */
+/** Finds hot, dead and struck pixels of a patch against the spot `p`. */
 export function findStrikes(kind: "map" | "trace", patch: Patch, p: Parameters, noise: NoiseLaw): number[] {
-  const { data } = patch;
   const { width, height } = patch.rectangle;
-  const found: number[] = [];
-  for (let y = 0; y < height; y++) {
-    for (let x = 0; x < width; x++) {
-      const i = y * width + x;
-      const value = data[i]!;
-      const left = x > 0 ? data[i - 1]! : data[i + 1]!;
-      const right = x < width - 1 ? data[i + 1]! : data[i - 1]!;
-      const above = y > 0 ? data[i - width]! : y < height - 1 ? data[i + width]! : left;
-      const below = y < height - 1 ? data[i + width]! : y > 0 ? data[i - width]! : right;
-      const across = (left + right) / 2;
-      const along = (above + below) / 2;
-      const gapAcross = value - across;
-      const gapAlong = value - along;
-      const gap2 = Math.max(gapAcross * gapAcross, gapAlong * gapAlong);
-      // a quarter of (5.5 s.d. + 5 photons)² is at least 7.5 variances and 6 photons² at the smaller neighbourhood
-      const least = Math.min(across, along);
-      if (gap2 < 7.5 * pixelVariance(noise, Math.min(least, value)) + 6) continue;
-      if (isOutlier(data, width, height, i, noise, meanAt(kind, patch, p, i))) found.push(i);
-    }
-  }
-  return found;
+  return findOutliers(patch.data, width, height, noise, (i) => meanAt(kind, patch, p, i));
 }

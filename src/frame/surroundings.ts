@@ -13,6 +13,10 @@ export interface Surroundings {
 
 const SECTORS = 8;
 
+function octant(dx: number, dy: number): number {
+  return (dx < 0 ? 4 : 0) + (dy < 0 ? 2 : 0) + (Math.abs(dx) < Math.abs(dy) ? 1 : 0);
+}
+
 /**
  * Compares the background in eight sectors around the spot, in the sum of many frames: χ² of their means about the
  * common mean. Only pixels more than `reach` (in x and y) from the centre count; too few of them say nothing (p = 1).
@@ -35,9 +39,7 @@ export function surveyBackground(
     for (let y = 0; y < height; y++) {
       for (let x = 0; x < width; x++) {
         if (!outside(x, y)) continue;
-        const angle =
-          height > 1 ? Math.atan2(y - centre[1], x - centre[0]) : x > centre[0] ? 0 : Math.PI - 1e-9;
-        take(Math.floor(((angle + Math.PI) / (2 * Math.PI)) * SECTORS) % SECTORS, picture[y * width + x]!);
+        take(octant(x - centre[0], height > 1 ? y - centre[1] : 0), picture[y * width + x]!);
       }
     }
   };

@@ -1,5 +1,6 @@
 import type { Decays } from "../decay/fit.ts";
 import { fitDecays } from "../decay/fit.ts";
+import { NEAR } from "../frame/first-look.ts";
 import type { PatchFit } from "../frame/fit-spot.ts";
 import { fitPatch } from "../frame/fit-spot.ts";
 import type { Evaluation } from "../frame/kernel.ts";
@@ -217,13 +218,13 @@ export class Rounds {
       const reference = referenceAt(this.frames, this.models, i);
       const bright = scored !== null && this.expectedLight[i]! > BRIGHT * Math.sqrt(scored.light.variance);
       const start = scored !== null && isSpot(kind, scored.estimate, reference) ? scored.estimate : reference;
-      let fit = bright ? fitPatch(kind, patch, start, noise) : null;
+      let fit = bright ? fitPatch(kind, patch, start, noise, NEAR) : null;
       for (let attempt = 0; attempt < 2; attempt++) {
         const strikes = findStrikes(kind, patch, fit?.converged ? fit.parameters : reference, noise);
         const before = patch.excluded.length;
         excludeFrom(patch, strikes);
         if (patch.excluded.length === before) break;
-        if (bright) fit = fitPatch(kind, patch, reference, noise);
+        if (bright) fit = fitPatch(kind, patch, reference, noise, NEAR);
       }
       this.own[i] = fit?.converged ? fit : null;
       if (bright && !fit?.converged && this.flags[i]!.length === 0) this.flags[i]!.push("fit-failed");

@@ -9,33 +9,43 @@ import type { ByteSource } from "./tiff/source.ts";
 
 const HASH_BLOCK = 4 * 2 ** 20;
 
+/** A file system gives so many bytes for the price of one. */
+const BLOCK = 4096;
+
 /**
- * A file read piece by piece, never as a whole, through one buffer.
- *
- * The file is opened for each piece, so that many stacks at once hold no file open; a piece is a frame, and opening
- * costs far less than decoding it.
+ * A file read piece by piece, never as a whole, through one buffer. Small pieces (a directory's fields) come from a
+ * block that is read around them.
  */
 export function fileSource(path: string): ByteSource {
   const size = fileSize(path);
   let buffer = new Uint8Array(0);
-  return {
+  const block = new Uint8Array(Math.min(BLOCK, size));
+  let blockStart = Number.POSITIVE_INFINITY;
+  const fill = (bytes: Uint8Array, offset: number): void => {
+    if (attempt(path, () => readInto(source, bytes, offset)) === bytes.length) return;
+    throw new InputFault(
+      `${path} became shorter while it was read; wait until it is copied and start again`,
+      { file: path },
+    );
+  };
+  const source: ByteSource = {
     name: path,
     size,
     read(offset, length) {
-      if (buffer.length < length) buffer = new Uint8Array(length);
-      const bytes = buffer.subarray(0, length);
-      const got = attempt(path, () => readInto(path, bytes, offset));
-      if (got < length) {
-        throw new InputFault(
-          `${path} became shorter while it was read; wait until it is copied and start again`,
-          {
-            file: path,
-          },
-        );
+      if (length > block.length / 2) {
+        if (buffer.length < length) buffer = new Uint8Array(length);
+        const bytes = buffer.subarray(0, length);
+        fill(bytes, offset);
+        return bytes;
       }
-      return bytes;
+      if (offset < blockStart || offset + length > blockStart + block.length) {
+        blockStart = Math.min(offset, size - block.length);
+        fill(block, blockStart);
+      }
+      return block.subarray(offset - blockStart, offset - blockStart + length);
     },
   };
+  return source;
 }
 
 /** SHA-256 of a whole source, in hexadecimal. */
@@ -59,19 +69,30 @@ export function readTextFile(path: string): string {
 export const inflate: Decompress = (packed, length) =>
   inflateSync(packed, { maxOutputLength: Math.max(length, 1) });
 
-function readInto(path: string, bytes: Uint8Array, offset: number): number {
-  const descriptor = openSync(path, "r");
-  try {
-    let got = 0;
-    while (got < bytes.length) {
-      const more = readSync(descriptor, bytes, got, bytes.length - got, offset + got);
-      if (more === 0) break;
-      got += more;
-    }
-    return got;
-  } finally {
-    closeSync(descriptor);
+/**
+ * The source that was read last keeps its file open until another one is read: to open it for every frame would cost as
+ * much as to read the frame, and many stacks at once still hold one file open.
+ */
+let open: { readonly source: ByteSource; readonly descriptor: number } | null = null;
+
+function descriptorOf(source: ByteSource): number {
+  if (open?.source !== source) {
+    if (open !== null) closeSync(open.descriptor);
+    open = null;
+    open = { source, descriptor: openSync(source.name, "r") };
   }
+  return open.descriptor;
+}
+
+function readInto(source: ByteSource, bytes: Uint8Array, offset: number): number {
+  const descriptor = descriptorOf(source);
+  let got = 0;
+  while (got < bytes.length) {
+    const more = readSync(descriptor, bytes, got, bytes.length - got, offset + got);
+    if (more === 0) break;
+    got += more;
+  }
+  return got;
 }
 
 function fileSize(path: string): number {

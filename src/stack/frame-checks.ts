@@ -19,6 +19,7 @@ export type FrameCheck = (frame: Float64Array, index: number) => void;
  * above zero but below the dark level are dead pixels when few, and a wrong offset when many.
  * @param detector null where the values are only looked at: then none is too low
  * @param dark dark frame, in place of the constant offset
+ * @param unsigned the values are whole numbers that have no sign
  */
 export function frameCheck(
   file: string,
@@ -26,22 +27,30 @@ export function frameCheck(
   width: number,
   detector: Detector | null,
   dark: Float64Array | null = null,
+  unsigned = false,
 ): FrameCheck {
   const level = dark === null ? (detector?.offset ?? 0) : dark.reduce((least, each) => Math.min(least, each));
   const readNoise = detector?.readNoise ?? 0;
   const floor = detector === null ? -Number.MAX_VALUE : level - DEEPEST_NOISE * readNoise;
+  if (unsigned && floor <= 0) return () => undefined;
   const place = (frame: number, pixel: number) => where(kind, width, frame, pixel);
   return (frame, index) => {
     let below = 0;
-    for (let i = 0; i < frame.length; i++) {
+    for (let i = nextOutside(frame, 0, floor); i < frame.length; i = nextOutside(frame, i + 1, floor)) {
       const value = frame[i]!;
-      if (value >= floor && value < Number.POSITIVE_INFINITY) continue;
       if (!Number.isFinite(value)) throw notFinite(file, value, place(index, i));
       if (value < 0) throw tooLow(file, value, level, readNoise, place(index, i));
       below++;
     }
     if (below > DEAD_SHARE * frame.length) throw offsetTooHigh(file, index, below / frame.length, floor);
   };
+}
+
+/** The first pixel from `from` on that is below the floor or no finite number; the frame's length where none is. */
+function nextOutside(frame: Float64Array, from: number, floor: number): number {
+  let i = from;
+  while (i < frame.length && frame[i]! >= floor && frame[i]! < Number.POSITIVE_INFINITY) i++;
+  return i;
 }
 
 interface Place {

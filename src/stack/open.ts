@@ -61,7 +61,8 @@ export async function openStack(path: string, options: OpenOptions = {}): Promis
   checkFrameCount(path, frames);
   const acquisition = buildAcquisition(settings, frames, sampledResponse(settings), raw.largest);
   const dark = await darkFrame(settings, raw);
-  const check = frameCheck(path, kind, width, acquisition.detector, dark);
+  const unsigned = raw.sampleType.startsWith("uint");
+  const check = frameCheck(path, kind, width, acquisition.detector, dark, unsigned);
   refuseStill(path, raw);
   return {
     kind,
