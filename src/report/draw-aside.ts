@@ -17,12 +17,13 @@ export interface Artist {
 
 export function hireArtist(): Artist {
   const worker = new Worker(new URL("./figure-worker.js", import.meta.url));
-  const ask = <T>(request: unknown): Promise<T> =>
-    new Promise((resolve, reject) => {
-      worker.once("message", resolve);
-      worker.once("error", reject);
-      worker.postMessage(request);
-    });
+  const failed = new Promise<never>((_, reject) => worker.once("error", reject));
+  failed.catch(() => undefined); // whoever asks hears of it
+  const ask = <T>(request: unknown): Promise<T> => {
+    const answer = new Promise<T>((resolve) => worker.once("message", resolve));
+    worker.postMessage(request);
+    return Promise.race([answer, failed]);
+  };
   return {
     checksum: (path) => ask<string>(path),
     draw: (analysis) => ask<Figures>(figureRequest(analysis)),

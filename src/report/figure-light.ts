@@ -33,8 +33,9 @@ export function lightFigure(drawing: Drawing, analysis: Analysis): string {
     0.02,
   );
   const key = keyRow(keyEntries(analysis, rows));
-  const panels = [key, panel(lightPanel(drawing, analysis, rows, x), HEIGHT)];
-  if (result.decay !== null) panels.push(panel(residualPanel(drawing, analysis, x), RESIDUAL_HEIGHT));
+  const panels = [key, panel(drawing, lightPanel(drawing, analysis, rows, x), HEIGHT)];
+  if (result.decay !== null)
+    panels.push(panel(drawing, residualPanel(drawing, analysis, x), RESIDUAL_HEIGHT));
   return assemble(panels, {
     id: "light",
     title: `Light under the spot, ${result.input.file}`,

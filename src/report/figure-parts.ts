@@ -4,8 +4,10 @@ import { FLAG } from "./wording.ts";
 
 /** What the figures are drawn with: the plotting library and a document, from Node's stand-in or from a page. */
 export interface Drawing {
-  readonly plot: typeof Plot;
+  readonly plot: Pick<typeof Plot, "areaY" | "dot" | "frame" | "line" | "lineY" | "plot" | "ruleY" | "text">;
   readonly document: Document;
+  /** An element as text. */
+  serialize(node: Element): string;
 }
 
 export const WIDTH = 460;
@@ -58,13 +60,6 @@ export function common(drawing: Drawing, height: number): Plot.PlotOptions {
     marginRight: 14,
     marginTop: 12,
     marginBottom: 40,
-    style: {
-      background: "none",
-      color: "inherit",
-      fontFamily: "inherit",
-      fontSize: "13px",
-      overflow: "visible",
-    },
   };
 }
 
@@ -74,7 +69,6 @@ export interface Panel {
   readonly height: number;
 }
 
-/** A plot as a panel at the height it was drawn with; its style sheet goes, as the figure has its own fonts. */
 export interface ErrorBar {
   readonly x: number;
   readonly low: number;
@@ -99,8 +93,14 @@ export function errorBars({ plot }: Drawing, bars: readonly ErrorBar[]): Plot.Ma
   });
 }
 
-export function panel(node: Element, height: number): Panel {
-  return { svg: node.outerHTML.replace(/<style>[\s\S]*?<\/style>/g, ""), height };
+const PLOT_STYLE =
+  "background: none; color: inherit; font-family: inherit; font-size: 13px; overflow: visible;";
+
+/** A plot as a panel at the height it was drawn with; its style sheet goes, as the figure has its own fonts. */
+export function panel(drawing: Drawing, node: Element, height: number): Panel {
+  // as an attribute: the plotting library sets styles by a property that not every document has
+  node.setAttribute("style", PLOT_STYLE);
+  return { svg: drawing.serialize(node).replace(/<style>[\s\S]*?<\/style>/g, ""), height };
 }
 
 /** The row that names the symbols; wraps where the entries do not fit. */

@@ -72,7 +72,7 @@ export function profileFigure(drawing: Drawing, analysis: Analysis): string {
     { text: "fit", symbol: "line", colour: LAW, filled: true },
     { text: "fit of the first", symbol: "line", colour: INK, filled: true, dashed: true },
   ]);
-  return assemble([key, panel(node, HEIGHT)], {
+  return assemble([key, panel(drawing, node, HEIGHT)], {
     id: "profiles",
     title: `Cuts through the spot, ${analysis.result.input.file}`,
     description: `Cuts along x through the fitted spot at ${chosen.map(({ row }) => panelName(row)).join(", ")}, each as a share of its fit's peak after the background is taken off, with the fit and the first frame's fit for comparison.`,

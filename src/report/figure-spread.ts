@@ -91,7 +91,7 @@ export function spreadFigure(drawing: Drawing, analysis: Analysis): string {
     ],
   });
   const key = keyRow(keyEntries(analysis, inside, beyond.length));
-  return assemble([key, panel(node, HEIGHT)], {
+  return assemble([key, panel(drawing, node, HEIGHT)], {
     id: "spread",
     title: `Spread of the spot, ${result.input.file}`,
     description: describe(analysis, beyond.length),

@@ -21,9 +21,7 @@ export async function renderFigures(analysis: Analysis): Promise<Figures> {
  * the figures take to draw.
  */
 export async function loadDrawing(): Promise<Drawing> {
-  const [plot, { parseHTML }] = await Promise.all([import("@observablehq/plot"), import("linkedom")]);
-  const { document } = parseHTML("<!doctype html><html><body></body></html>");
-  return { plot, document };
+  return (await import("./drawing.ts")).drawing;
 }
 
 /** Draws the figures with a document at hand: a page's own, or Node's stand-in. */
