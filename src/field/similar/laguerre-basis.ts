@@ -19,11 +19,14 @@ export class LaguerreBasis {
   /** z P_k = b_(k+1) P_(k+1) + (2k+1+α) P_k + b_k P_(k−1) with b_k = √(k(k+α)). */
   readonly #alpha: number;
   readonly #next: Float64Array;
+  /** 1/b_(k+1) */
+  readonly #inverse: Float64Array;
 
   constructor(alpha: number, size: number) {
     this.size = size;
     this.#alpha = alpha;
     this.#next = Float64Array.from({ length: size + 1 }, (_, k) => Math.sqrt(k * (k + alpha)));
+    this.#inverse = this.#next.slice(1).map((b) => 1 / b);
     const jacobi = Matrix.zeros(size, size);
     for (let k = 0; k < size; k++) {
       jacobi.set(k, k, 2 * k + 1 + alpha);
@@ -56,6 +59,21 @@ export class LaguerreBasis {
       before = now;
       now = after;
     }
+  }
+
+  /** first·Σ a_k·P_k(z) over k < count, without a row to write to and without divisions. */
+  sum(z: number, first: number, a: Float64Array, count: number): number {
+    const [next, inverse, shift] = [this.#next, this.#inverse, z - 1 - this.#alpha];
+    let before = 0;
+    let now = first;
+    let sum = 0;
+    for (let k = 0; k < count; k++) {
+      sum += a[k]! * now;
+      const after = ((shift - 2 * k) * now - next[k]! * before) * inverse[k]!;
+      before = now;
+      now = after;
+    }
+    return sum;
   }
 
   /** ∂²(e^(−z) P_k) = raised(k)/s·e^(−z) P_(k+1) along an axis; the Laplacian for round functions. */

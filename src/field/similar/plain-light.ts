@@ -31,6 +31,7 @@ export function plainLight(problem: SimilarProblem): SimilarLight {
       if (period === null) break;
     }
   }
+  const isRound = [start, diffusion].every(([xx, xy, yy]) => xx === yy && xy === 0);
   return {
     amount: (i) => parts[i]!.reduce((sum, part) => sum + part.amount, 0),
     caughtShare: () => 0,
@@ -41,6 +42,14 @@ export function plainLight(problem: SimilarProblem): SimilarLight {
         else addTrace(part, problem.pixel, grid, out);
       }
     },
+    ...(kind === "map" && isRound
+      ? {
+          radial(i, step, count, out) {
+            out.fill(0, 0, count);
+            for (const part of parts[i]!) addRadial(part, problem.pixel, step, count, out);
+          },
+        }
+      : {}),
   };
 }
 
@@ -93,6 +102,22 @@ function addMap({ amount, covariance }: Part, pixel: number, grid: PixelGrid, ou
         ratio *= change;
       }
     }
+  }
+}
+
+/** As `addMap`, with 3/4·∇⁴ for ∂_x⁴ + ∂_y⁴: the part that is the same in all directions. */
+function addRadial(
+  { amount, covariance: [xx] }: Part,
+  pixel: number,
+  step: number,
+  count: number,
+  out: Float64Array,
+): void {
+  const peak = amount / (2 * Math.PI * xx);
+  const fourth = (0.75 * pixel ** 4) / (2880 * xx * xx);
+  for (let i = 0; i < count; i++) {
+    const w = (i * step) ** 2 / xx;
+    out[i] = out[i]! + peak * Math.exp(-0.5 * w) * Math.max(1 - fourth * (w * (w - 8) + 8), 0);
   }
 }
 

@@ -55,4 +55,9 @@ export interface SimilarLight {
   caughtShare(frame: number): number;
   /** Light per µm² (map, row-major) or per µm (trace). */
   fill(frame: number, grid: PixelGrid, out: Float64Array): void;
+  /**
+   * Light per µm² at the distances 0, step, 2·step … from the centre, count of them; only for maps that are round but
+   * for the pixels' own corners, whose part is averaged over all directions.
+   */
+  readonly radial?: (frame: number, step: number, count: number, out: Float64Array) => void;
 }

@@ -21,12 +21,11 @@ export interface RoundScreen extends Screen {
 export function roundScreen(flow: Flow, optics: Optics, reach: number, step: number): RoundScreen {
   const radius = new StretchedAxis(narrowest(flow, optics.blur[0], 0), reach, step);
   const { basis } = flow.shape;
-  const row = new Float64Array(basis.size);
   const values = flow.coefficients.map((coefficients, i) => {
     const [s] = flow.timeline.scales(flow.timeline.times[i]!);
     const [a, used, scale] = seenRound(basis, coefficients, s, optics);
     const out = new Float64Array(radius.count);
-    for (let p = 0; p < radius.count; p++) out[p] = valueAt(basis, a, used, radius.at(p) ** 2, scale, row);
+    for (let p = 0; p < radius.count; p++) out[p] = valueAt(basis, a, used, radius.at(p) ** 2, scale);
     return out;
   });
   return { radius, values };
@@ -39,7 +38,7 @@ export interface Strip {
   readonly pixel: number;
 }
 
-/** ∫ over |y| < slit/2 of round states, averaged over a pixel along x. */
+/** ∫ over |y| < slit/2 of round states, averaged over a pixel along x: their values along the radius, added up. */
 export function stripScreen(
   flow: Flow,
   optics: Optics,
@@ -47,9 +46,7 @@ export function stripScreen(
   step: number,
   strip: Strip,
 ): RoundScreen {
-  const radius = new StretchedAxis(narrowest(flow, optics.blur[0], 0), reach, step);
-  const { basis } = flow.shape;
-  const row = new Float64Array(basis.size);
+  const { radius, values } = roundScreen(flow, optics, reach, step);
   const alongX =
     strip.pixel === 0
       ? [{ at: 0, weight: 1 }]
@@ -57,24 +54,45 @@ export function stripScreen(
           at,
           weight: weight / strip.pixel,
         }));
-  const values = flow.coefficients.map((coefficients, i) => {
-    const [s] = flow.timeline.scales(flow.timeline.times[i]!);
-    const [a, used, scale] = seenRound(basis, coefficients, s, optics);
-    const across = nodesOver(0, Math.min(strip.slit / 2, REACH * Math.sqrt(scale)), 2 / Math.sqrt(scale));
-    const out = new Float64Array(radius.count);
-    for (let p = 0; p < radius.count; p++) {
-      const x = radius.at(p);
-      let sum = 0;
-      for (const dx of alongX) {
-        for (const y of across) {
-          sum += dx.weight * y.weight * valueAt(basis, a, used, (x + dx.at) ** 2 + y.at ** 2, scale, row);
-        }
+  const across = nodesOver(0, Math.min(strip.slit / 2, reach), 2 / narrowest(flow, optics.blur[0], 0));
+  const count = radius.count;
+  const table = new Float64Array(count * count);
+  for (let p = 0; p < count; p++) {
+    for (const dx of alongX) {
+      for (const y of across) {
+        const square = (radius.at(p) + dx.at) ** 2 + y.at ** 2;
+        addCubic(table, p * count, radius.psi(square) / radius.step, count, 2 * dx.weight * y.weight);
       }
-      out[p] = 2 * sum;
     }
-    return out;
+  }
+  return { radius, values: values.map((each) => product(table, each)) };
+}
+
+/** Adds to a row of `count` the weights that read an even function at u by Lagrange's cubic; none beyond the end. */
+function addCubic(table: Float64Array, row: number, u: number, count: number, weight: number): void {
+  const i = Math.floor(u);
+  if (i + 2 >= count) return;
+  const f = u - i;
+  const [before, after, second] = [f + 1, f - 1, f - 2];
+  const shares = [
+    (-f * after * second) / 6,
+    (before * after * second) / 2,
+    (-before * f * second) / 2,
+    (before * f * after) / 6,
+  ];
+  for (const [k, share] of shares.entries()) {
+    const at = row + Math.abs(i - 1 + k);
+    table[at] = table[at]! + weight * share;
+  }
+}
+
+function product(table: Float64Array, values: Float64Array): Float64Array {
+  const count = values.length;
+  return Float64Array.from(values, (_, p) => {
+    let sum = 0;
+    for (let q = 0, at = p * count; q < count; q++, at++) sum += table[at]! * values[q]!;
+    return sum;
   });
-  return { radius, values };
 }
 
 /** Smallest width of the light over a flow. */
@@ -82,22 +100,11 @@ export function narrowest({ timeline }: Flow, blur: number, axis: 0 | 1): number
   return Math.sqrt(Math.min(1, timeline.scales(timeline.end)[axis]) + blur);
 }
 
-function valueAt(
-  basis: LaguerreBasis,
-  a: Float64Array,
-  used: number,
-  square: number,
-  scale: number,
-  row: Float64Array,
-): number {
+function valueAt(basis: LaguerreBasis, a: Float64Array, used: number, square: number, scale: number): number {
   const z = square / (2 * scale);
   if (z > 60) return 0;
   const gauss = Math.exp(-z) / scale;
-  if (used === 1) return gauss * a[0]!;
-  basis.evaluate(z, gauss, used, row, 0);
-  let sum = 0;
-  for (let k = 0; k < used; k++) sum += a[k]! * row[k]!;
-  return sum;
+  return used === 1 ? gauss * a[0]! : basis.sum(z, gauss, a, used);
 }
 
 /** Coefficients after blur, which is diffusion of the light alone, and pixels. */

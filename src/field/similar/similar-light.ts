@@ -165,10 +165,16 @@ function roundLight(
   const optics = opticsOf(problem, frame);
   const { radius, values } = roundScreen(flow, optics, reachOf(flow, optics, problem)[0], radialStep);
   const width = Math.sqrt(frame.area);
-  return collected(problem, shares(flow), weights, (light) => {
-    const profile = profileOf(values, light, 1 / (2 * Math.PI * frame.area));
+  const light = collected(problem, shares(flow), weights, (each) => {
+    const profile = profileOf(values, each, 1 / (2 * Math.PI * frame.area));
     return (_, grid, out) => fillRound(profile, radius, width, grid, out);
   });
+  return {
+    ...light,
+    // the radius is a line of points from the centre
+    radial: (i, step, count, out) =>
+      light.fill(i, { x0: 0, y0: 0, pixel: step, width: count, height: 1 }, out),
+  };
 }
 
 function planarLight(

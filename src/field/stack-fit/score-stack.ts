@@ -3,6 +3,7 @@ import { pixelVariance } from "../../frame/patch.ts";
 import type { SimilarLight } from "../similar/problem.ts";
 import { type Resolution, resolutionOf, similarLight } from "../similar/similar-light.ts";
 import { type Name, problemOf, type Values, valuesOf } from "./parameters.ts";
+import { addRings, isRound, quasiDeviance, type RoundLight, ringDeviance } from "./ring-score.ts";
 import type { StackData, StackFrame } from "./stack-data.ts";
 
 /** Quasi-score and Fisher information of all pixels of all frames. */
@@ -54,9 +55,9 @@ export function naturalSize(name: Name, v: Values): number {
     case "D_xy":
     case "D_yy":
       return variance / v.tau!;
-    case "k_n0":
     case "repulsion":
       return 1;
+    case "k_n0":
     case "capture":
       return 1 / v.tau!;
     case "tau":
@@ -80,6 +81,37 @@ export function scoreStack(data: StackData, names: readonly Name[], p: Float64Ar
   const v = valuesOf(names, p);
   const resolution = resolutionOf(problemOf(data, v));
   const base = render(data, v, resolution);
+  const score = new Float64Array(n);
+  const information = new Float64Array(n * n);
+  if (isRound(data, base.light)) {
+    addRings(data, names, v, base.light, roundSides(data, names, v, resolution), score, information);
+  } else addPixels(data, names, v, base, resolution, score, information);
+  for (const frame of data.frames) {
+    addPool(frame, names.indexOf("background"), v, data.noise, score, information);
+  }
+  for (let a = 0; a < n; a++) for (let b = 0; b < a; b++) information[b * n + a] = information[a * n + b]!;
+  return { score, information };
+}
+
+function roundSides(data: StackData, names: readonly Name[], v: Values, resolution: Resolution) {
+  return names.map((name) => {
+    if (["amplitude", "background", "x", "y"].includes(name)) return null;
+    const h = DIFFERENCE * naturalSize(name, v);
+    const moved = (by: number): RoundLight =>
+      render(data, { ...v, [name]: v[name]! + by }, resolution).light as RoundLight;
+    return { plus: moved(h), minus: moved(-h), scale: v.amplitude! / (2 * h) };
+  });
+}
+
+function addPixels(
+  data: StackData,
+  names: readonly Name[],
+  v: Values,
+  base: Rendering,
+  resolution: Resolution,
+  score: Float64Array,
+  information: Float64Array,
+): void {
   const sides = names.map((name) => {
     if (name === "amplitude" || name === "background") return null;
     const h = DIFFERENCE * naturalSize(name, v);
@@ -93,8 +125,6 @@ export function scoreStack(data: StackData, names: readonly Name[], p: Float64Ar
   const image = new Float64Array(largest);
   const other = new Float64Array(largest);
   const columns = names.map(() => new Float64Array(largest));
-  const score = new Float64Array(n);
-  const information = new Float64Array(n * n);
   for (let k = 0; k < data.frames.length; k++) {
     const frame = data.frames[k]!;
     const count = frame.patch.data.length;
@@ -110,10 +140,7 @@ export function scoreStack(data: StackData, names: readonly Name[], p: Float64Ar
       }
     }
     addFrame(frame, image, columns, v, data.noise, score, information);
-    addPool(frame, names.indexOf("background"), v, data.noise, score, information);
   }
-  for (let a = 0; a < n; a++) for (let b = 0; b < a; b++) information[b * n + a] = information[a * n + b]!;
-  return { score, information };
 }
 
 function addFrame(
@@ -163,22 +190,23 @@ function addPool(
 export type Visit = (value: number, mean: number, k: number, index: number) => void;
 
 /**
- * −2 ln L up to a constant: Poisson where photons are counted without read noise, else normal with the model's variance.
+ * −2 × the log quasi-likelihood of a whole stack, up to a constant: minus twice the function whose slope `scoreStack`
+ * gives, see `quasiDeviance`.
  *
  * @param visit also sees every pixel of the patches
  */
 export function deviance(data: StackData, names: readonly Name[], p: Float64Array, visit?: Visit): number {
   const v = valuesOf(names, p);
-  const { noise } = data;
   const base = render(data, v, resolutionOf(problemOf(data, v)));
+  const pools = data.frames.reduce((sum, { patch, background }) => {
+    return sum + quasiDeviance(data.noise, patch.outerCount, patch.outerSum, v.background! + background);
+  }, 0);
+  if (visit === undefined && isRound(data, base.light)) return pools + ringDeviance(data, v, base.light);
+  return pools + pixelDeviance(data, v, base, visit);
+}
+
+function pixelDeviance(data: StackData, v: Values, base: Rendering, visit?: Visit): number {
   const image = new Float64Array(Math.max(...data.frames.map(({ patch }) => patch.data.length)));
-  const counting = noise.floor === 0 && noise.excess === 1;
-  const cost = (value: number, mean: number): number => {
-    const variance = pixelVariance(noise, mean);
-    return counting
-      ? 2 * (mean - value * Math.log(variance))
-      : (value - mean) ** 2 / variance + Math.log(variance);
-  };
   let sum = 0;
   for (const [k, { patch, background }] of data.frames.entries()) {
     paint(data, base, k, image);
@@ -187,12 +215,9 @@ export function deviance(data: StackData, names: readonly Name[], p: Float64Arra
     for (let i = 0; i < patch.data.length; i++) {
       if (excluded.size > 0 && excluded.has(i)) continue;
       const mean = v.amplitude! * image[i]! + level;
-      sum += cost(patch.data[i]!, mean);
+      sum += quasiDeviance(data.noise, 1, patch.data[i]!, mean);
       visit?.(patch.data[i]!, mean, k, i);
     }
-    // the pool's own scatter is no function of the parameters but through its mean and variance
-    const pooled = patch.outerCount === 0 ? 0 : patch.outerSum / patch.outerCount;
-    sum += patch.outerCount * cost(pooled, level);
   }
   return sum;
 }
