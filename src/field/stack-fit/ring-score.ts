@@ -12,10 +12,9 @@ export function isRound(data: StackData, light: SimilarLight): light is RoundLig
   return data.kind === "map" && light.radial !== undefined;
 }
 
-/** The light with a parameter moved up and down, and what turns their difference into photons per unit of it. */
-export interface Sides {
-  readonly plus: RoundLight;
-  readonly minus: RoundLight;
+/** The light with a parameter moved, and what turns the difference into photons per unit of it. */
+export interface Side {
+  readonly moved: RoundLight;
   readonly scale: number;
 }
 
@@ -39,14 +38,13 @@ export function addRings(
   names: readonly Name[],
   v: Values,
   light: RoundLight,
-  sides: readonly (Sides | null)[],
+  sides: readonly (Side | null)[],
   score: Float64Array,
   information: Float64Array,
 ): void {
   const rings = ringSums(data, v.x!, v.y!);
   const largest = Math.max(...rings.frames.map(({ count }) => count));
   const image = new Float64Array(largest);
-  const other = new Float64Array(largest);
   const columns = names.map(() => new Float64Array(largest));
   const factors = names.map((name) => (name === "x" ? 1 : name === "y" ? 2 : 0));
   for (const [k, frame] of rings.frames.entries()) {
@@ -61,9 +59,8 @@ export function addRings(
         slopeOverRadius(image, count, rings.step, column);
         for (let i = 0; i < count; i++) column[i] = -v.amplitude! * column[i]!;
       } else {
-        paintRings(data, side.plus, k, rings.step, count, column);
-        paintRings(data, side.minus, k, rings.step, count, other);
-        for (let i = 0; i < count; i++) column[i] = (column[i]! - other[i]!) * side.scale;
+        paintRings(data, side.moved, k, rings.step, count, column);
+        for (let i = 0; i < count; i++) column[i] = (column[i]! - image[i]!) * side.scale;
       }
     }
     const level = v.background! + data.frames[k]!.background;
