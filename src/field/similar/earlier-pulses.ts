@@ -24,38 +24,58 @@ export function memory(removal: number): number {
 export function steadyFlow(shape: Shape, timeline: Timeline, period: number): Flow {
   let flow = flowOf(shape, timeline, null);
   if (timeline.rates.annihilation === 0 && timeline.rates.repulsion === 0) return flow;
-  let background = left(flow, period);
+  const glows = glowsOf(shape, timeline, period);
+  let background = left(flow, glows);
   for (let round = 0; round < MOST_ROUNDS; round++) {
     flow = flowOf(shape, timeline, background);
-    const next = left(flow, period);
+    const next = left(flow, glows);
     let change = 0;
-    background = background.map((before, i) =>
-      before.map((value, j) => {
-        const decay = Math.exp(-timeline.rates.removal * timeline.times[i]!);
+    background = background.map((before, i) => {
+      const decay = Math.exp(-timeline.rates.removal * timeline.times[i]!);
+      return before.map((value, j) => {
         change = Math.max(change, Math.abs(next[i]![j]! - value) * decay);
         return value + RELAXATION * (next[i]![j]! - value);
-      }),
-    );
+      });
+    });
     if (change < STANDS) break;
   }
   return flow;
 }
 
-/** ℓ at the shape's nodes at each time, times e^(λt). */
-function left(flow: Flow, period: number): Background {
-  const { timeline, shape } = flow;
-  const weights = new Float64Array(timeline.size);
-  const coefficients = new Float64Array(shape.size);
+/** An earlier pulse at one time: how its density there follows from a flow's coefficients. */
+interface Glow {
+  /** Weights of the states, e^(−λ(t − age)) with them. */
+  readonly weights: Float64Array;
+  /** [node][k]: basis functions of the width it has by then, per axis; one axis for round shapes. */
+  readonly tables: readonly Float64Array[];
+}
+
+/** The earlier pulses at each of the timeline's times. They stay the same while the density is sought. */
+function glowsOf(shape: Shape, timeline: Timeline, period: number): Glow[][] {
   return timeline.times.map((age) => {
-    const sum = new Float64Array(shape.size);
+    const glows: Glow[] = [];
     const here = timeline.scales(age);
     for (let t = age + period; t <= timeline.end; t += period) {
-      weights.fill(0);
+      const weights = new Float64Array(timeline.size);
       timeline.addReading(t, Math.exp(-timeline.rates.removal * (t - age)), weights);
-      combine(flow.coefficients, weights, coefficients);
       const there = timeline.scales(t);
-      if (shape.planar) addPlanar(shape, coefficients, here, there, sum);
-      else addRound(shape, coefficients, here[0], there[0], sum);
+      const axes = shape.planar ? ([0, 1] as const) : ([0] as const);
+      const tables = axes.map((axis) => nodeTable(shape, here[axis] / there[axis], there[axis]));
+      glows.push({ weights, tables });
+    }
+    return glows;
+  });
+}
+
+/** ℓ at the shape's nodes at each time, times e^(λt). */
+function left({ coefficients, shape }: Flow, glows: readonly (readonly Glow[])[]): Background {
+  const a = new Float64Array(shape.size);
+  return glows.map((each) => {
+    const sum = new Float64Array(shape.size);
+    for (const { weights, tables } of each) {
+      combine(coefficients, weights, a);
+      if (shape.planar) addPlanar(shape, a, tables, sum);
+      else addRound(shape, a, tables, sum);
     }
     return sum;
   });
@@ -72,27 +92,22 @@ export function combine(states: readonly Float64Array[], weights: Float64Array, 
   }
 }
 
-function addRound(shape: Shape, a: Float64Array, here: number, there: number, sum: Float64Array): void {
-  const { basis } = shape;
-  const row = new Float64Array(basis.size);
-  for (let j = 0; j < basis.size; j++) {
-    const z = (basis.z[j]! * here) / there;
-    basis.evaluate(z, Math.exp(-z) / there, basis.size, row, 0);
+function addRound({ basis }: Shape, a: Float64Array, [table]: Glow["tables"], sum: Float64Array): void {
+  const n = basis.size;
+  for (let j = 0; j < n; j++) {
     let value = 0;
-    for (let k = 0; k < basis.size; k++) value += a[k]! * row[k]!;
+    for (let k = 0; k < n; k++) value += a[k]! * table![j * n + k]!;
     sum[j] = sum[j]! + Math.max(value, 0);
   }
 }
 
 function addPlanar(
-  shape: Shape,
+  { basis }: Shape,
   a: Float64Array,
-  here: readonly [number, number],
-  there: readonly [number, number],
+  [first, second]: Glow["tables"],
   sum: Float64Array,
 ): void {
-  const n = shape.basis.size;
-  const [first, second] = [0, 1].map((axis) => nodeTable(shape, here[axis]! / there[axis]!, there[axis]!));
+  const n = basis.size;
   const half = new Float64Array(n);
   for (let i = 0; i < n; i++) {
     half.fill(0);
@@ -108,12 +123,12 @@ function addPlanar(
   }
 }
 
-function nodeTable({ basis }: Shape, ratio: number, scale: number): Float64Array {
+function nodeTable({ basis, planar }: Shape, ratio: number, scale: number): Float64Array {
   const n = basis.size;
   const table = new Float64Array(n * n);
   for (let j = 0; j < n; j++) {
     const z = basis.z[j]! * ratio;
-    basis.evaluate(z, Math.exp(-z) / Math.sqrt(scale), n, table, j * n);
+    basis.evaluate(z, Math.exp(-z) / (planar ? Math.sqrt(scale) : scale), n, table, j * n);
   }
   return table;
 }

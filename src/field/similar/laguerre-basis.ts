@@ -55,7 +55,7 @@ export class LaguerreBasis {
     let now = first;
     for (let k = 0; k < count; k++) {
       out[at + k] = now;
-      const after = ((z - 2 * k - 1 - this.#alpha) * now - this.#next[k]! * before) / this.#next[k + 1]!;
+      const after = ((z - 2 * k - 1 - this.#alpha) * now - this.#next[k]! * before) * this.#inverse[k]!;
       before = now;
       now = after;
     }
