@@ -9,7 +9,7 @@ import { densityOf } from "./density.ts";
 import { gatherEvidence } from "./evidence.ts";
 import { fieldBlock } from "./field-block.ts";
 import { fieldQuantities } from "./field-quantities.ts";
-import { isAdopted, isMisled, judgeField } from "./field-verdict.ts";
+import { isAdopted, isMisled, judgeField, repulsionNotTested } from "./field-verdict.ts";
 import type { Joint } from "./joint.ts";
 import { joinFits, quadratic } from "./joint.ts";
 import { type Quantities, quantitiesOf, quantitiesOfField } from "./quantities.ts";
@@ -19,7 +19,7 @@ import type { DecayLaw, Law, Result } from "./result.ts";
 import { frameRows, spotsOf } from "./rows.ts";
 import { tensorOf } from "./tensor.ts";
 import { judge } from "./verdict.ts";
-import { fitWholeStack, type WholeStack, wholeLightOf } from "./whole-stack.ts";
+import { fitWholeStack, isDipolar, type WholeStack, wholeLightOf } from "./whole-stack.ts";
 
 const DEFAULT_SEED = 1;
 
@@ -117,9 +117,13 @@ function withField(
   whole: WholeStack | null;
 } {
   const { field: wish = "auto" } = options;
-  const pays = wish === "always" || (wish === "auto" && isMisled(plain));
+  const dipolar = isDipolar(reading.stack.acquisition);
+  const pays = wish === "always" || (wish === "auto" && (isMisled(plain) || dipolar));
   const whole = pays ? fitWholeStack(reading, joint) : null;
-  if (whole === null) return { outcome: widths, verdict: plain, field: null, whole };
+  if (whole === null) {
+    const verdict = dipolar ? repulsionNotTested(plain, reading.stack.acquisition) : plain;
+    return { outcome: widths, verdict, field: null, whole };
+  }
   const field = fieldQuantities(whole.data, whole.fits);
   const adopted = isAdopted(plain, whole);
   const { acquisition } = reading.stack;

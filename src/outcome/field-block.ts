@@ -5,8 +5,10 @@ import type { Ranged } from "./field-intervals.ts";
 import { birgeOf, type FieldQuantities } from "./field-quantities.ts";
 import { CM2_PER_S } from "./quantities.ts";
 import type { Result } from "./result.ts";
+import { thermalEnergy } from "./thermal-energy.ts";
 import type { WholeStack } from "./whole-stack.ts";
 
+const MICRO_PER_MILLI = 1e3;
 /** Correlations from here on are shown: the two parameters can hardly be told apart. */
 const STRONG = 0.8;
 
@@ -40,7 +42,10 @@ export function fieldBlock(
     return ranged(name, { value: preferred.parameters[i]!, u: uncertaintyOf(preferred, i) });
   };
   const rate = free("k_n0");
-  const { density } = acquisition.sample;
+  const { density, temperature } = acquisition.sample;
+  const repulsion = free("repulsion");
+  const shift =
+    repulsion === null || temperature === null ? null : scaledBy(repulsion, thermalEnergy(temperature));
   return {
     preferred: preferred.candidate.name,
     adopted,
@@ -50,8 +55,11 @@ export function fieldBlock(
       value: length,
       u: determined ? (length > 0 ? field.length2.u / (2 * length) : Math.sqrt(field.length2.u)) : null,
     },
+    repulsion,
+    u0_n0: shift,
+    u0: shift === null || density === null ? null : perDensity(shift, density, MICRO_PER_MILLI),
     k_n0: rate,
-    k: rate === null || density === null ? null : perDensity(rate, density),
+    k: rate === null || density === null ? null : perDensity(rate, density, CM2_PER_S),
     capture: free("capture"),
     trap_lifetime: free("trap_lifetime"),
     chi2: goodness.chi2,
@@ -81,12 +89,17 @@ function scaled(value: number | null, factor: number): number | null {
   return value === null ? null : factor * value;
 }
 
-/** k = k·n₀/n₀ in cm²/s; n₀ in excitons per µm². */
-function perDensity(rate: RangedValue, density: Measured): NonNullable<Result["field"]>["k"] {
-  const factor = CM2_PER_S / density.value;
+type FittedValue = NonNullable<NonNullable<Result["field"]>["k"]>;
+
+/** k = k·n₀/n₀ or u₀ = u₀n₀/n₀, n₀ in excitons per µm², times a factor for the unit. */
+function perDensity(whole: FittedValue, density: Measured, factor: number): FittedValue {
+  return scaledBy(whole, { value: factor / density.value, u: (factor * density.u) / density.value ** 2 });
+}
+
+function scaledBy({ value, u }: FittedValue, factor: Measured): FittedValue {
   return {
-    value: factor * rate.value,
-    u: rate.u === null ? null : factor * Math.hypot(rate.u, (rate.value * density.u) / density.value),
+    value: factor.value * value,
+    u: u === null ? null : Math.hypot(factor.value * u, factor.u * value),
   };
 }
 

@@ -1,9 +1,12 @@
 import type { CandidateFit } from "../field/stack-fit/candidates.ts";
+import type { Name } from "../field/stack-fit/parameters.ts";
+import type { Acquisition } from "../stack/acquisition.ts";
 import type { FieldQuantities } from "./field-quantities.ts";
 import { birgeOf, describes } from "./field-quantities.ts";
 import type { Quantities } from "./quantities.ts";
 import { CM2_PER_S } from "./quantities.ts";
 import type { Result } from "./result.ts";
+import { thermalEnergy } from "./thermal-energy.ts";
 import { notToldApart } from "./told-apart.ts";
 import { levelOf, type Reason, reason } from "./verdict-reason.ts";
 import type { WholeStack } from "./whole-stack.ts";
@@ -13,6 +16,7 @@ const MISLEADING = [
   "line-does-not-fit",
   "annihilation-suspected",
   "traps-suspected",
+  "repulsion-suspected",
   "spot-not-gaussian",
   "spot-shrinks",
 ];
@@ -28,12 +32,13 @@ export function isMisled(verdict: Result["verdict"]): boolean {
 
 /**
  * Whether the headline quantities come from the whole-stack fit: widths misled, and a model describes the stack that says
- * why. Plain diffusion is no reason, unless it is the earlier pulses that it sums.
+ * why. Plain diffusion is no reason, unless it is the earlier pulses that it sums. Repulsion that the fit needs misleads
+ * the widths even where they show no sign of it: they spread on a line that is only slightly bent.
  */
 export function isAdopted(verdict: Result["verdict"], whole: WholeStack): boolean {
   const { preferred } = whole.fits;
   const explains = preferred.candidate.name !== "diffusion" || whole.data.period !== null;
-  return isMisled(verdict) && explains && describes(preferred);
+  return (isMisled(verdict) || preferred.candidate.repulsion) && explains && describes(preferred);
 }
 
 /** The verdict with what the whole-stack fit found. */
@@ -58,7 +63,7 @@ export function judgeField(
       reason(
         isMisled(plain) ? "unsound" : "caution",
         "no-model-fits",
-        "no candidate for the whole stack (diffusion, annihilation, capture, both) describes the recording either",
+        `no candidate for the whole stack (${tried(whole)}) describes the recording either`,
         "look at the residual maps frame by frame: another species, a moving focus, or a sample that is not uniform",
       ),
       ...plain.reasons,
@@ -75,6 +80,33 @@ export function judgeField(
     ),
     ...plain.reasons,
     ...open,
+  ]);
+}
+
+function tried({ fits }: WholeStack): string {
+  const repulsion = fits.fits.some(({ candidate }) => candidate.repulsion);
+  return `diffusion, annihilation, capture, both${repulsion ? ", repulsion" : ""}`;
+}
+
+/** What is said of dipolar excitons' widths where no fit of the whole stack asks for repulsion. */
+export function repulsionNotTested(verdict: Result["verdict"], { sample }: Acquisition): Result["verdict"] {
+  const { blueShift, temperature } = sample;
+  const share =
+    blueShift === null || temperature === null
+      ? null
+      : blueShift.value / (4 * thermalEnergy(temperature).value);
+  const size =
+    share === null
+      ? "by an unknown part"
+      : `by up to ${Number((100 * share).toPrecision(2))} % (ΔE/4k_BT by the stated blue shift)`;
+  return levelOf([
+    reason(
+      "caution",
+      "repulsion-not-tested",
+      `the excitons are dipolar and push each other apart, which makes D from the widths too large ${size}; no fit of the whole stack was made that would tell`,
+      "let the whole stack be fitted, or repeat at a tenth of the pulse energy: D must stay",
+    ),
+    ...verdict.reasons,
   ]);
 }
 
@@ -101,6 +133,16 @@ function confirmed(fit: CandidateFit): Reason[] {
       ),
     );
   }
+  if (fit.candidate.repulsion) {
+    found.push(
+      reason(
+        "caution",
+        "repulsion-suspected",
+        `the whole-stack fit needs repulsion between the excitons, u₀n₀/k_BT = ${quoted(fit, "repulsion")} at the centre right after the pulse; D is that of few excitons, and L how far this pulse's spot spreads`,
+        "repeat at a tenth of the pulse energy or with a wider spot: u₀n₀ must follow the density, and D must stay",
+      ),
+    );
+  }
   if (fit.candidate.capture) {
     found.push(
       reason(
@@ -115,9 +157,13 @@ function confirmed(fit: CandidateFit): Reason[] {
 }
 
 function rate(fit: CandidateFit, name: "k_n0" | "capture"): string {
+  return `${quoted(fit, name)} /ns`;
+}
+
+function quoted(fit: CandidateFit, name: Name): string {
   const i = fit.names.indexOf(name);
   const u = birgeOf(fit) * Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
-  return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)} /ns`;
+  return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)}`;
 }
 
 function because(fit: CandidateFit): string {
@@ -128,6 +174,8 @@ function because(fit: CandidateFit): string {
       return `traps catch excitons (at ${rate(fit, "capture")}) that then stand still`;
     case "annihilation_and_capture":
       return `excitons annihilate each other (k·n₀ = ${rate(fit, "k_n0")}) and traps catch them (at ${rate(fit, "capture")})`;
+    case "repulsion":
+      return `excitons push each other apart (u₀n₀/k_BT = ${quoted(fit, "repulsion")} at the centre right after the pulse)`;
     case "diffusion":
       return "one Gaussian is no summary of a frame here, for instance because excitons of earlier pulses lie under the new ones";
   }

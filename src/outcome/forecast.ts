@@ -121,7 +121,7 @@ export function forecast(scenario: Scenario): Forecast {
 export function roadOf({ medium, recording, kind }: Scenario): Forecast["road"] {
   const { period, responseSigma, pixelY } = recording;
   const slit = kind === "trace" && Number.isFinite(pixelY);
-  const plain = medium.annihilation === 0 && medium.capture === 0;
+  const plain = medium.annihilation === 0 && medium.capture === 0 && medium.repulsion === 0;
   return plain && !slit && period === null && responseSigma === 0 ? "widths" : "whole_stack";
 }
 
@@ -162,6 +162,7 @@ const CHANGES: Readonly<Record<RemedyName, (scenario: Scenario, factor: number) 
       ...scenario,
       start: { ...start, covariance: [xx * area, xy * area, yy * area] },
       annihilationRate: scenario.annihilationRate / area,
+      repulsion: scenario.repulsion / area,
     };
   },
 };

@@ -117,6 +117,7 @@ function settingsOf(result: Result, file: string): Settings {
     settings["time.unit"] = "ns";
   }
   if (field?.k_n0 && field.k_n0.value > 0) settings["life.annihilation"] = `${field.k_n0.value} /ns`;
+  if (field?.repulsion && field.repulsion.value > 0) settings["motion.repulsion"] = field.repulsion.value;
   if (field?.capture && field.trap_lifetime && field.capture.value > 0) {
     settings["life.capture"] = `${field.capture.value} /ns`;
     settings["life.trap_lifetime"] = `${field.trap_lifetime.value} ns`;

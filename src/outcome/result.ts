@@ -22,7 +22,13 @@ export const quantitySchema = z
   })
   .describe("a quantity with its uncertainty");
 
-const candidateName = z.enum(["diffusion", "annihilation", "capture", "annihilation_and_capture"]);
+const candidateName = z.enum([
+  "diffusion",
+  "annihilation",
+  "capture",
+  "annihilation_and_capture",
+  "repulsion",
+]);
 
 const withU = z.strictObject({ value: number, u: number.min(0) });
 const fitted = z.strictObject({
@@ -161,9 +167,16 @@ export const resultSchema = z.strictObject({
     .strictObject({
       preferred: candidateName,
       adopted: z.boolean().describe("true where the headline quantities come from this fit"),
-      D: ranged.describe("cm²/s"),
+      D: ranged.describe("cm²/s; of few excitons, where they repel each other"),
       tau: ranged.describe("ns; of free excitons"),
-      diffusion_length: fitted.describe("µm; where free excitons end or are caught"),
+      diffusion_length: fitted.describe(
+        "µm; where free excitons end or are caught; with repulsion at this density, and √(Dτ) at a low one",
+      ),
+      repulsion: ranged
+        .nullable()
+        .describe("β = u₀n₀/k_BT; D is 1 + β times as large at the centre right after the pulse"),
+      u0_n0: fitted.nullable().describe("meV; the blue shift that β means, where a temperature is stated"),
+      u0: fitted.nullable().describe("µeV µm²; where a density is stated too"),
       k_n0: ranged.nullable().describe("1/ns; annihilation at the centre right after the pulse"),
       k: fitted.nullable().describe("cm²/s; where a density is stated"),
       capture: ranged.nullable().describe("1/ns"),

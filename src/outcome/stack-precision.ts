@@ -44,6 +44,7 @@ export function stackPrecision(scenario: Scenario): StackPrecision | null {
   const { medium } = scenario;
   const candidate = {
     name: "diffusion",
+    repulsion: medium.repulsion > 0,
     annihilation: medium.annihilation > 0,
     capture: medium.capture > 0,
   } as const;
@@ -143,6 +144,7 @@ function parametersOf(scenario: Scenario, data: StackData, names: readonly Name[
     D_yy: yy,
     tau: medium.lifetime,
     background: Math.max(scenario.background, 1e-6),
+    repulsion: scenario.repulsion,
     k_n0: scenario.annihilationRate,
     capture: medium.capture,
     trap_lifetime: medium.trapLifetime,

@@ -84,7 +84,10 @@ function meaning(law: Reading["preferredLaw"]): string {
   }[law];
 }
 
-/** Annihilation flattens the top and fakes early motion; traps leave a core on a foot and late frames that stand still. */
+/**
+ * Annihilation flattens the top and fakes early motion; so does repulsion, but the light then falls as it does without;
+ * traps leave a core on a foot and late frames that stand still.
+ */
 function annihilationOrTraps(seen: Case): Reason[] {
   const { reading, evidence, joint } = seen;
   const shape = z(evidence.shape);
@@ -95,7 +98,8 @@ function annihilationOrTraps(seen: Case): Reason[] {
   const peaked = shape > SURE;
   // the foot is then the old excitons', and earlier-pulses-glow says so
   if (peaked && leftOver(seen) > HARMFUL_GLOW) return found;
-  if (flat && (slowing || decaysFastFirst)) found.push(annihilation(seen));
+  if (flat && decaysFastFirst) found.push(annihilation(seen));
+  else if (flat && slowing) found.push(reading.decays === null ? annihilation(seen) : repulsion(seen));
   else if (peaked && (slowing || decaysFastFirst)) found.push(traps(seen));
   else if (slowing && decaysFastFirst && slowsDown(evidence)) {
     const candidates = [joint.decay?.law, ...(reading.decays?.rivals ?? [])];
@@ -115,6 +119,16 @@ function annihilation({ reading, evidence, quantities }: Case): Reason {
     "annihilation-suspected",
     `the spot has a flat top, the light falls faster at first, and the early motion dies out: excitons annihilate each other${size}`,
     "repeat at a tenth of the pulse energy, or extrapolate D to zero fluence; a larger spot at the same pulse energy does not help",
+  );
+}
+
+function repulsion({ evidence }: Case): Reason {
+  const { early, late } = evidence;
+  return reason(
+    fallsBy(evidence) > 0.3 ? "unsound" : "caution",
+    "repulsion-suspected",
+    `the spot has a flat top and its early motion dies out (late D ${short(CM2_PER_S * late.value)} after ${short(CM2_PER_S * early.value)} cm²/s) while the light falls as one exponential: excitons seem to push each other apart, as dipolar ones do`,
+    "give [sample] layer_distance or blue_shift if they are dipolar, and the whole-stack fit allows for it; repeat at a tenth of the pulse energy or with a wider spot: D must stay",
   );
 }
 

@@ -15,6 +15,7 @@ import { prepareFrames } from "../frame/prepare.ts";
 import { referenceAt } from "../frame/references.ts";
 import { findStrikes } from "../frame/strikes.ts";
 import { chiSquareUpperTail } from "../numerics/distributions.ts";
+import type { Acquisition } from "../stack/acquisition.ts";
 import type { Stack } from "../stack/stack.ts";
 import { meanDiffusion } from "../transport/line.ts";
 import { perAxis } from "../transport/width.ts";
@@ -42,8 +43,26 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const data = stackDataOf(reading);
   const annihilation = reading.decays?.fits.annihilation ?? null;
   const hint = annihilation?.converged ? annihilation.parameters[annihilation.names.indexOf("k_n0")]! : null;
-  const fits = fitCandidates(data, symmetryOf(reading), startOf(reading, joint, data), hint);
+  const fits = fitCandidates(
+    data,
+    symmetryOf(reading),
+    startOf(reading, joint, data),
+    hint,
+    isDipolar(acquisition) ? repulsionHint(reading) : null,
+  );
   return fits === null ? null : { data, fits };
+}
+
+/** Whether the acquisition tells of excitons that are apart from their holes in another layer, and so repel each other. */
+export function isDipolar({ sample }: Acquisition): boolean {
+  return sample.blueShift !== null || sample.layerDistance !== null;
+}
+
+/** β by D at first, D(1 + β/4) of a Gaussian spot, over D at last, when the excitons are few; to start a fit from. */
+function repulsionHint(reading: Reading): number {
+  const { early, late } = halves(reading);
+  const ratio = late.value > 0 ? early.value / late.value : 1;
+  return Math.min(Math.max(4 * (ratio - 1), 0.3), 6);
 }
 
 /**

@@ -106,6 +106,9 @@ function instrumentText({ stack }: Analysis): string {
 function fieldMethod({ field }: Result): string {
   if (field === null) return "";
   const rates = [
+    ...(field.repulsion === null
+      ? []
+      : [`β = ${rangedText(field.repulsion, "")} at the centre right after the pulse`]),
     ...(field.k_n0 === null
       ? []
       : [`k·n₀ = ${rangedText(field.k_n0, "/ns")} at the centre right after the pulse`]),
@@ -116,7 +119,7 @@ function fieldMethod({ field }: Result): string {
   ];
   const found = [`D = ${rangedText(field.D, "cm²/s")}`, `τ = ${rangedText(field.tau, "ns")}`, ...rates];
   return (
-    "The reaction–diffusion model ∂n/∂t = ∇·D∇n − n/τ − k n² − c n for free and ∂m/∂t = c n − m/τ_m for trapped excitons was fitted to all pixels of all frames at once by maximum likelihood (damped Fisher scoring), " +
+    `The reaction–diffusion model ∂n/∂t = ∇·D${field.repulsion === null ? "" : "(1 + β n/n₀)"}∇n − n/τ − k n² − c n for free and ∂m/∂t = c n − m/τ_m for trapped excitons was fitted to all pixels of all frames at once by maximum likelihood (damped Fisher scoring), ` +
     `with its terms chosen by corrected Akaike weight and goodness of fit: ${CANDIDATE[field.preferred]} (${found.join(", ")}; χ²/dof = ${(field.chi2 / field.degrees_of_freedom).toFixed(2)} over rings of groups of frames, p ${equalsText(field.p_value)}). ` +
     fieldUncertaintyText(field) +
     (field.adopted

@@ -16,18 +16,20 @@ export function rangedText(
   { value, u, interval95: [low, high], interval_from }: Ranged,
   unit: string,
 ): string {
+  const of = unit === "" ? "" : ` ${unit}`;
   const short = (x: number): string => plain(Number(x.toPrecision(DIGITS)));
-  if (u === null && low === null && high === null) return `${short(value)} ${unit} (not determined)`;
-  if (low === null && high === null) return `${short(value)} ${unit} (not determined from below or above)`;
-  if (low === null) return `at most ${short(high!)} ${unit} (95 %, not determined from below)`;
-  if (high === null) return `at least ${short(low)} ${unit} (95 %, not determined from above)`;
-  const text = `${u === null ? short(value) : concise(value, u)} ${unit}`;
-  return interval_from === "profile" ? `${text} (95 %: ${short(low)} to ${short(high)} ${unit})` : text;
+  if (u === null && low === null && high === null) return `${short(value)}${of} (not determined)`;
+  if (low === null && high === null) return `${short(value)}${of} (not determined from below or above)`;
+  if (low === null) return `at most ${short(high!)}${of} (95 %, not determined from below)`;
+  if (high === null) return `at least ${short(low)}${of} (95 %, not determined from above)`;
+  const text = `${u === null ? short(value) : concise(value, u)}${of}`;
+  return interval_from === "profile" ? `${text} (95 %: ${short(low)} to ${short(high)}${of})` : text;
 }
 
 const WORDS = {
   D: "D",
   tau: "τ",
+  repulsion: "β",
   k_n0: "k·n₀",
   capture: "the rate of capture",
   trap_lifetime: "the lifetime in traps",

@@ -45,6 +45,7 @@ export const CANDIDATE: Readonly<Record<CandidateName, string>> = {
   annihilation: "diffusion and annihilation",
   capture: "diffusion and capture into traps",
   annihilation_and_capture: "diffusion, annihilation and capture",
+  repulsion: "diffusion and repulsion",
 };
 
 const FROM: Readonly<Record<Quantity["from"], string>> = {

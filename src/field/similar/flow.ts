@@ -8,6 +8,8 @@ export interface Flow {
   readonly timeline: Timeline;
   /** Coefficients a_k, one array a time; a_0 is the share of excitons that annihilation has left. */
   readonly coefficients: readonly Float64Array[];
+  /** Null for a single pulse. */
+  readonly background: Background | null;
 }
 
 /** e^(λt) times the density of earlier pulses, at the shape's nodes at each of the timeline's times. */
@@ -22,7 +24,8 @@ export type Background = readonly Float64Array[];
  */
 export function flowOf(shape: Shape, timeline: Timeline, background: Background | null): Flow {
   const { annihilation, repulsion } = timeline.rates;
-  if (repulsion !== 0) return { shape, timeline, coefficients: pushed(shape, timeline, background) };
+  if (repulsion !== 0)
+    return { shape, timeline, coefficients: pushed(shape, timeline, background), background };
   const states = [shape.start()];
   for (let i = 1; i < timeline.size; i++) {
     const before = states[i - 1]!;
@@ -33,7 +36,7 @@ export function flowOf(shape: Shape, timeline: Timeline, background: Background 
     shape.toCoefficients(state, out);
     return out;
   });
-  return { shape, timeline, coefficients };
+  return { shape, timeline, coefficients, background };
 }
 
 function pushed(shape: Shape, timeline: Timeline, background: Background | null): Float64Array[] {

@@ -148,6 +148,8 @@ function keepPossible(data: StackData, names: readonly Name[], from: Float64Arra
     if (positive) to[i] = Math.min(Math.max(to[i]!, from[i]! / 3), 5 * from[i]!);
     if (name === "trap_lifetime") to[i] = Math.min(to[i]!, endlessLifetime(data));
     if (name === "background") to[i] = Math.max(to[i]!, 1e-7);
+    // D(1 + β) stays above zero everywhere
+    if (name === "repulsion") to[i] = Math.max(to[i]!, -0.3);
     if (name === "k_n0" || name === "capture") to[i] = Math.max(to[i]!, -0.3 / tau);
   }
 }

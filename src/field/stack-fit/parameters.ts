@@ -4,16 +4,18 @@ import type { StackData } from "./stack-data.ts";
 
 /** What a candidate leaves free beside light, centre, start, D, τ and background. */
 export interface Candidate {
-  readonly name: "diffusion" | "annihilation" | "capture" | "annihilation_and_capture";
+  readonly name: "diffusion" | "annihilation" | "capture" | "annihilation_and_capture" | "repulsion";
   readonly annihilation: boolean;
   readonly capture: boolean;
+  readonly repulsion: boolean;
 }
 
 export const CANDIDATES: readonly Candidate[] = [
-  { name: "diffusion", annihilation: false, capture: false },
-  { name: "annihilation", annihilation: true, capture: false },
-  { name: "capture", annihilation: false, capture: true },
-  { name: "annihilation_and_capture", annihilation: true, capture: true },
+  { name: "diffusion", annihilation: false, capture: false, repulsion: false },
+  { name: "annihilation", annihilation: true, capture: false, repulsion: false },
+  { name: "capture", annihilation: false, capture: true, repulsion: false },
+  { name: "annihilation_and_capture", annihilation: true, capture: true, repulsion: false },
+  { name: "repulsion", annihilation: false, capture: false, repulsion: true },
 ];
 
 /** Which components of start and motion are free: one for a round spot, three for an elliptical one. */
@@ -73,6 +75,7 @@ export function namesOf(kind: "map" | "trace", candidate: Candidate, symmetry: S
   if (kind === "map" && symmetry.diffusion === "tensor") names.push("D_xx", "D_xy", "D_yy");
   else names.push("D");
   names.push("tau", "background");
+  if (candidate.repulsion) names.push("repulsion");
   if (candidate.annihilation) names.push("k_n0");
   if (candidate.capture) names.push("capture", "trap_lifetime");
   return names;
