@@ -13,6 +13,23 @@ export function closureText({ stacks, asked, failed, seed }: Closure): string {
 
 const SYMBOLS = { diffusion_coefficient: "D", lifetime: "τ", diffusion_length: "L" } as const;
 
+/** Counting errors from which a coverage is called wrong: chance does that once in 400. */
+const SURE = 3;
+
+/** What the coverages say of the error bars, as a sentence. */
+export function closureFinding({ quantities }: Closure): string {
+  const names = Object.keys(SYMBOLS) as (keyof typeof SYMBOLS)[];
+  const off = names.flatMap((name) => {
+    const found = quantities[name];
+    if (found === null || Math.abs(found.coverage - 0.95) <= SURE * found.u_coverage) return [];
+    const size = found.coverage < 0.95 ? "too small" : "too large";
+    return [`the one of ${SYMBOLS[name]} is ${size}, it holds in ${(100 * found.coverage).toFixed(0)} %`];
+  });
+  return off.length === 0
+    ? "The 95 % intervals hold as often as they should, within counting error."
+    : `Not every 95 % interval is right for this recording: ${off.join("; ")}.`;
+}
+
 /** The heading and one line a quantity. */
 export function closureTexts(closure: Closure): string[] {
   const lines = (Object.keys(SYMBOLS) as (keyof typeof SYMBOLS)[]).flatMap((name) => {

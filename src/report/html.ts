@@ -1,18 +1,19 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
-import { closureText } from "./closure-text.ts";
+import { closureFinding, closureText } from "./closure-text.ts";
+import { candidateTables } from "./field-tables.ts";
 import { escapeText as e } from "./figure-parts.ts";
 import type { Figures } from "./figures.ts";
 import { methodsText } from "./methods.ts";
 import { PAGE_STYLE } from "./page-style.ts";
 import {
   budgetTables,
-  candidateTables,
   closureTable,
   densityTable,
   framesTable,
   lawTables,
   lengthsTable,
+  scroll,
   settingsTable,
   tensorTable,
 } from "./page-tables.ts";
@@ -49,6 +50,7 @@ export function renderReport(analysis: Analysis, figures: Figures, viewer: Viewe
     verdictSection(result),
     spreadAndLight(result, figures),
     viewerHtml(viewer, figures.profiles),
+    ruled("The whole stack at once", candidateTables(result)),
     ruled("How sure", [
       `<p>Standard uncertainties (k = 1). Type A comes from counting statistics through the fits, type B from what is known about pixel size, time base and temperature.</p>`,
       ...budgetTables(result),
@@ -57,12 +59,11 @@ export function renderReport(analysis: Analysis, figures: Figures, viewer: Viewe
       ? []
       : [
           ruled("Closure", [
-            `<p>${e(closureText(result.closure))}. Each was analysed as the recording was, calibrations taken as exact.</p>`,
-            closureTable(result.closure),
+            `<p>${e(closureText(result.closure))}. Each was analysed as the recording was, calibrations taken as exact. ${e(closureFinding(result.closure))}</p>`,
+            scroll(closureTable(result.closure), "Closure"),
           ]),
         ]),
     ruled("Numbers in other forms", [`<div class="tables">${otherForms(result).join("\n")}</div>`]),
-    ...(result.field === null ? [] : [ruled("The whole stack at once", candidateTables(result))]),
     ruled("Laws tried", lawTables(result)),
     ruled("Methods", [
       `<p>For a supplement, to be copied as it stands.</p>`,
@@ -156,10 +157,14 @@ function fromText(name: QuantityName, quantity: NonNullable<Result["quantities"]
 }
 
 function spreadAndLight(result: Result, figures: Figures): string {
-  const { decay } = result;
+  const { decay, field } = result;
+  const standing =
+    field?.adopted === true
+      ? `<p>Of each frame's own spot. These laws would mislead here: the numbers above come from the <a href="#the-whole-stack-at-once">fit of the whole stack</a>.</p>\n`
+      : "";
   return `<section aria-labelledby="evidence">
 <h2 id="evidence">Spread and light</h2>
-<div class="pair">
+${standing}<div class="pair">
 <figure>${figures.spread}<figcaption>Preferred law: ${e(spreadText(result.transport))}. Bars: one standard uncertainty.</figcaption></figure>
 <figure>${figures.light}<figcaption>${decay === null ? "No law of decay was fitted." : `Preferred law: ${e(decayText(decay))}. Below: residuals in standard deviations.`}</figcaption></figure>
 </div>

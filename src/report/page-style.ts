@@ -57,6 +57,8 @@ section { padding: 1.9rem 0 0.4rem; }
 section + section { margin-top: 1.2rem; border-top: 1px solid var(--rule); }
 section > h2 { margin-bottom: 0.9rem; }
 @media (min-width: 62rem) {
+  .candidates tbody th { min-width: 11.5rem; }
+  .candidates th, .candidates td { padding-right: 0.8rem; }
   section.ruled { display: grid; grid-template-columns: 11rem minmax(0, 1fr); column-gap: 2rem; }
   section.ruled > h2 { grid-column: 1; grid-row: 1 / span 40; position: sticky; top: 1rem; align-self: start; }
   section.ruled > * { grid-column: 2; }
@@ -74,6 +76,9 @@ th, td { text-align: left; padding: 0.3rem 1.1rem 0.3rem 0; vertical-align: base
 thead th { font-weight: 600; border-bottom-color: var(--soft); }
 tbody th { font-weight: 400; }
 .scroll th, .scroll td { overflow-wrap: normal; }
+.candidates thead th { white-space: normal; vertical-align: bottom; }
+sub, sup { line-height: 0; }
+.scroll + p.soft { max-width: 52rem; margin: -0.4rem 0 1.2rem; }
 .formula { white-space: nowrap; }
 td.n, th.n { text-align: right; white-space: nowrap; }
 tr.chosen th, tr.chosen td { font-weight: 600; }
@@ -98,7 +103,7 @@ details > summary { cursor: pointer; color: var(--accent); margin-bottom: 0.6rem
 .maps { display: grid; grid-template-columns: repeat(3, minmax(0, 1fr)); gap: 1rem; }
 #viewer h3 { margin: 1.4rem 0 0.3rem; }
 #viewer h3 + p { margin-bottom: 0.7rem; max-width: 52rem; }
-.sums { max-width: 46rem; margin-bottom: 1.6rem; }
+.sums { align-items: end; max-width: 46rem; margin-bottom: 1.6rem; }
 .sums figcaption span { display: block; font-weight: 400; }
 .maps figcaption { margin: 0 0 0.3rem; color: var(--ink); font-weight: 600; }
 .screen { position: relative; background: var(--rule); }

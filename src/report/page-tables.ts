@@ -1,25 +1,34 @@
 import type { Law, Result } from "../outcome/result.ts";
 import { escapeText as e } from "./figure-parts.ts";
 import { concise, plain, symbols } from "./notation.ts";
-import { CANDIDATE, DECAY_LAW, FLAG, probability, QUANTITY, TRANSPORT_LAW, unitText } from "./wording.ts";
+import { DECAY_LAW, FLAG, probability, QUANTITY, TRANSPORT_LAW, unitText } from "./wording.ts";
 
 interface Column {
   readonly text: string;
   readonly numeric?: boolean;
 }
 
-/** Cells are HTML already; the first of every row is its heading. */
-function table(
+/** HTML already; one that reaches over several columns says over how many. */
+type Cell = string | { readonly html: string; readonly span: number };
+
+/** The first cell of every row is its heading. */
+export function table(
   columns: readonly Column[],
-  rows: readonly { readonly cells: readonly string[]; readonly chosen?: boolean }[],
+  rows: readonly { readonly cells: readonly Cell[]; readonly chosen?: boolean }[],
   options: { readonly caption?: string; readonly className?: string } = {},
 ): string {
   const align = (i: number) => (columns[i]?.numeric === true ? ' class="n"' : "");
   const head = columns.map((column, i) => `<th scope="col"${align(i)}>${e(column.text)}</th>`).join("");
   const body = rows.map(({ cells, chosen }) => {
-    const [first = "", ...rest] = cells;
-    const others = rest.map((cell, i) => `<td${align(i + 1)}>${cell}</td>`).join("");
-    return `<tr${chosen === true ? ' class="chosen"' : ""}><th scope="row"${align(0)}>${first}</th>${others}</tr>`;
+    let at = 0;
+    const texts = cells.map((cell) => {
+      const { html, span } = typeof cell === "string" ? { html: cell, span: 1 } : cell;
+      const name = at === 0 ? 'th scope="row"' : "td";
+      const text = `<${name}${span === 1 ? align(at) : ` colspan="${span}"`}>${html}</${name.slice(0, 2)}>`;
+      at += span;
+      return text;
+    });
+    return `<tr${chosen === true ? ' class="chosen"' : ""}>${texts.join("")}</tr>`;
   });
   const caption = options.caption === undefined ? "" : `<caption>${e(options.caption)}</caption>`;
   const name = options.className === undefined ? "" : ` class="${options.className}"`;
@@ -109,7 +118,6 @@ export function budgetTables(result: Result): string[] {
   });
 }
 
-/** The candidates of the whole-stack fit side by side; empty where it was not made. */
 /** Bias and coverage over stacks drawn from the fitted model. */
 export function closureTable({ quantities }: NonNullable<Result["closure"]>): string {
   const rows = (["diffusion_coefficient", "lifetime", "diffusion_length"] as const).flatMap((name) => {
@@ -135,53 +143,6 @@ export function closureTable({ quantities }: NonNullable<Result["closure"]>): st
 }
 
 const CLOSURE_UNIT = { diffusion_coefficient: "cm^2/s", lifetime: "ns", diffusion_length: "µm" } as const;
-
-export function candidateTables({ field }: Result): string[] {
-  if (field === null) return [];
-  const show = (parameters: Candidate["parameters"], names: readonly string[], factor = 1): string => {
-    const found = names.flatMap((name) => parameters[name] ?? []);
-    if (found.length === 0) return "–";
-    const value = found.reduce((sum, each) => sum + each.value, 0) / found.length;
-    const u = found[0]?.u ?? null;
-    return u === null ? plain(factor * value, 3) : concise(factor * value, factor * u);
-  };
-  const rows = field.candidates.map(({ name, parameters, p_value, weight, converged, reason }) => ({
-    chosen: name === field.preferred,
-    cells: [
-      CANDIDATE[name] + (name === field.preferred ? " (preferred)" : ""),
-      // 1 µm²/ns is 10 cm²/s
-      e(show(parameters, parameters.D === undefined ? ["D_xx", "D_yy"] : ["D"], 10)),
-      e(show(parameters, ["tau"])),
-      e(show(parameters, ["k_n0"])),
-      e(show(parameters, ["capture"])),
-      e(show(parameters, ["trap_lifetime"])),
-      probability(p_value),
-      converged ? weight.toFixed(2) : e(reason),
-    ],
-  }));
-  const columns = ["D (cm²/s)", "τ (ns)", "k·n₀ (1/ns)", "c (1/ns)", "τ of traps (ns)", "p", "Weight"];
-  const candidates = scroll(
-    table([{ text: "Candidate" }, ...columns.map((text) => ({ text, numeric: true }))], rows, {
-      caption: "Candidates for the whole stack",
-    }),
-    "Candidates for the whole stack",
-  );
-  const strong = field.correlations.map(
-    ({ a, b, r }) => `${symbols(a)} and ${symbols(b)} (r = ${r.toFixed(2)})`,
-  );
-  const notes = [
-    field.adopted
-      ? "The numbers at the top come from the preferred candidate."
-      : "The numbers at the top come from the widths; this fit stands beside them.",
-    ...(field.capture === null
-      ? []
-      : ["Trapped excitons are taken to shine like free ones: τ and c rest on that, D and L do not."]),
-    ...(strong.length === 0 ? [] : [`Hardly told apart: ${strong.join(", ")}.`]),
-  ];
-  return [candidates, `<p>${e(notes.join(" "))}</p>`];
-}
-
-type Candidate = NonNullable<Result["field"]>["candidates"][number];
 
 export function lawTables(result: Result): string[] {
   const spread = laws("Laws of spread", result.transport.models, result.transport.preferred, TRANSPORT_LAW);
@@ -213,10 +174,10 @@ function lawCells(law: Law | null): string[] {
   if (law === null) return ["not fitted", "", "", ""];
   const parameters = Object.entries(law.parameters).map(([name, value]) => {
     const unit = value.unit === "1" || value.unit === "" ? "" : ` ${unitText(value.unit)}`;
-    return e(`${symbols(name)} = ${concise(value.value, value.u)}${unit}`);
+    return formula(`${symbols(name)} = ${concise(value.value, value.u)}${unit}`);
   });
   const lines = [
-    e(symbols(law.formula)),
+    formula(symbols(law.formula)),
     ...parameters,
     ...(law.converged ? [] : ["the fit did not converge"]),
   ];
@@ -227,6 +188,13 @@ function lawCells(law: Law | null): string[] {
     e(probability(law.p_value)),
     law.weight.toFixed(2),
   ];
+}
+
+/** t^α and t_a as they are written by hand. */
+function formula(text: string): string {
+  return e(text)
+    .replace(/\^(\p{L}+)/gu, "<sup>$1</sup>")
+    .replace(/(?<=\p{L})_(\p{L}+)/gu, "<sub>$1</sub>");
 }
 
 export function settingsTable(result: Result): string {

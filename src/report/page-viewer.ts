@@ -87,7 +87,7 @@ function sums({ kind }: ViewerData): string {
   const titles = kind === "map" ? ["Early", "Middle", "Late"] : ["All delays, downwards"];
   const figures = titles.map(
     (title, i) =>
-      `<figure id="sum-${i}-figure"><figcaption>${title}<span class="soft" id="sum-${i}-text"></span></figcaption><div class="screen"><canvas id="sum-${i}" role="img"></canvas></div></figure>`,
+      `<figure id="sum-${i}-figure"><figcaption>${title}<span class="soft" id="sum-${i}-text"></span><span class="soft" id="sum-${i}-rms"></span></figcaption><div class="screen"><canvas id="sum-${i}" role="img"></canvas></div></figure>`,
   );
   const signs =
     kind === "map"

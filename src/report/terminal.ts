@@ -126,13 +126,22 @@ export function spreadText(transport: Result["transport"]): string {
 
 /** The whole-stack fit in one line. */
 export function fieldText(field: NonNullable<Result["field"]>): string {
-  const rates = [
-    ...(field.k_n0 === null ? [] : [`k·n₀ = ${rangedText(field.k_n0, "/ns")}`]),
-    ...(field.capture === null ? [] : [`c = ${rangedText(field.capture, "/ns")}`]),
-    ...(field.trap_lifetime === null ? [] : [`lifetime in traps ${rangedText(field.trap_lifetime, "ns")}`]),
+  const found = [
+    namedText("D", field.D, "cm²/s"),
+    ...(field.k_n0 === null ? [] : [namedText("k·n₀", field.k_n0, "/ns")]),
+    ...(field.capture === null ? [] : [namedText("c", field.capture, "/ns")]),
+    ...(field.trap_lifetime === null ? [] : [namedText("τ of traps", field.trap_lifetime, "ns")]),
+    ...(field.repulsion === null ? [] : [namedText("β", field.repulsion, "")]),
   ];
-  const d = `D = ${rangedText(field.D, "cm²/s")}`;
-  return `${CANDIDATE[field.preferred]}; ${[d, ...rates].join(", ")}; p = ${probability(field.p_value)}`;
+  return `${CANDIDATE[field.preferred]}; ${found.join(", ")}; p${NO_BREAK}${equals(field.p_value)}`;
+}
+
+/** "D = 0.50(1) cm²/s" or "c at most 0.1 /ns"; a line may break before its interval only. */
+function namedText(name: string, ranged: NonNullable<Result["field"]>["D"], unit: string): string {
+  const text = rangedText(ranged, unit);
+  const whole = text.startsWith("at ") ? `${name} ${text}` : `${name} = ${text}`;
+  const [first = "", ...rest] = whole.split(" (");
+  return [first.replaceAll(" ", NO_BREAK), ...rest].join(" (");
 }
 
 /** The law of decay in one line, as the law of spread. */

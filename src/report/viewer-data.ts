@@ -51,7 +51,7 @@ export interface Viewer {
   readonly wholeCells: string;
 }
 
-/** Cells in the whole page at most; at 4 to 6 bits a cell this keeps the report well under 2 MB. */
+/** Cells in the whole page at most; at 4 to 6 bits a cell, and 5 more for a whole-stack model, the report stays under 2 MB. */
 const MOST_CELLS = 800_000;
 const MOST_SIDE = 64;
 const LEAST_SIDE = 32;

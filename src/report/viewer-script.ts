@@ -231,10 +231,11 @@ export async function frameViewer(tools: Tools): Promise<void> {
 
   function caption(id: string, members: readonly number[], rms: number | null): void {
     const delay = (place: number | undefined) => data.frames[place ?? 0]?.delay ?? "";
-    const reach = `${delay(members[0])} to ${delay(members.at(-1))} ns`;
-    const text = `${reach}, ${members.length} frames${rms === null ? "" : `, rms ${rms.toFixed(2)}`}`;
-    element(`${id}-text`).textContent = text;
-    element(id).setAttribute("aria-label", `Residuals added up, ${text}`);
+    const reach = `${delay(members[0])} to ${delay(members.at(-1))} ns, ${members.length} frames`;
+    const size = rms === null ? "too dim to say" : `rms ${rms.toFixed(2)}`;
+    element(`${id}-text`).textContent = reach;
+    element(`${id}-rms`).textContent = size;
+    element(id).setAttribute("aria-label", `Residuals added up, ${reach}: ${size}`);
   }
 
   /** The model was chosen anew: everything that hangs on it. */

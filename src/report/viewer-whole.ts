@@ -15,8 +15,11 @@ export interface WholeData {
   readonly leftOut: readonly number[];
 }
 
-/** Half a step moves a residual by 1/40 of a standard deviation, on light and in the dark alike. */
-const STEPS_PER_DEVIATION = 20;
+/**
+ * Half a step moves a residual by 1/100 of a standard deviation, on light and in the dark alike: where all cells of an
+ * even background err alike, the sum of 600 of them errs by a quarter.
+ */
+const STEPS_PER_DEVIATION = 100;
 
 /**
  * The preferred whole-stack model's cells of the shown frames; null where none was fitted.

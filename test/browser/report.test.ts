@@ -6,6 +6,7 @@ import { type Browser, chromium, type Page } from "playwright-core";
 import { afterAll, beforeAll, describe, expect, it, vi } from "vitest";
 import { writeReports } from "../../src/report/write.ts";
 import { makeAnalysis } from "../report/fixture.ts";
+import { makeClosure, withField } from "../report/fixture-field.ts";
 
 /** The page in a real browser: Chromium from CHROMIUM, or the first of its usual names on PATH. */
 function findChromium(): string {
@@ -34,12 +35,18 @@ const FLAGS = [
 ];
 
 let browser: Browser;
-const addresses = { map: "", trace: "" };
+const addresses = { map: "", trace: "", whole: "", beside: "" };
 
 beforeAll(async () => {
   const folder = mkdtempSync(join(tmpdir(), "gleamwalk-page-"));
   await writeReports(makeAnalysis("trapped"), join(folder, "map"));
   await writeReports(makeAnalysis("good", { kind: "trace", side: 120 }), join(folder, "trace"));
+  const whole = withField("trapped");
+  whole.result.closure = makeClosure();
+  await writeReports(whole, join(folder, "whole"));
+  await writeReports(withField("good", { adopted: false }), join(folder, "beside"));
+  for (const name of ["whole", "beside"] as const)
+    addresses[name] = pathToFileURL(join(folder, name, "report.html")).href;
   addresses.map = pathToFileURL(join(folder, "map/report.html")).href;
   addresses.trace = pathToFileURL(join(folder, "trace/report.html")).href;
   browser = await chromium.launch({ executablePath: findChromium(), headless: true, args: FLAGS });
@@ -83,7 +90,11 @@ function bytes(page: Page, id: string): Promise<number[]> {
   }, id);
 }
 
-describe.each(["map", "trace"] as const)("the report of a %s in Chromium", (kind) => {
+describe.each([
+  ["map", "map"],
+  ["trace", "trace"],
+  ["map with a whole-stack fit and closure", "whole"],
+] as const)("the report of a %s in Chromium", (_, kind) => {
   it("opens without a complaint and asks for nothing but itself", async () => {
     const { page, complaints, requests } = await visit(addresses[kind]);
     for (const scheme of ["dark", "light"] as const) await page.emulateMedia({ colorScheme: scheme });
@@ -111,12 +122,14 @@ describe.each(["map", "trace"] as const)("the report of a %s in Chromium", (kind
     expect(await state.textContent()).toMatch(/^Frame 3 \(0 to 49\), 0\.5 ns: used/);
     expect(await slider.getAttribute("aria-valuetext")).toBe(await state.textContent());
     expect(await page.locator("#cut-x").innerHTML()).not.toBe(before.cut);
-    if (kind === "map") expect(await pixels(page, "residual")).not.toBe(before.residual);
+    if (kind !== "trace") expect(await pixels(page, "residual")).not.toBe(before.residual);
     await page.keyboard.press("End");
     expect(await state.textContent()).toMatch(/^Frame 49 /);
     await page.keyboard.press("Home");
     expect(await state.textContent()).toMatch(
-      /^Frame 0 \(0 to 49\), −1 ns: set aside: before the pulse, spot fit failed; no spot was fitted$/,
+      kind === "whole"
+        ? /^Frame 0 \(0 to 49\), −1 ns: set aside: before the pulse, spot fit failed; the whole-stack fit leaves it out$/
+        : /^Frame 0 \(0 to 49\), −1 ns: set aside: before the pulse, spot fit failed; no spot was fitted$/,
     );
     expect(complaints).toEqual([]);
     await page.context().close();
@@ -167,6 +180,92 @@ describe("the viewer's pictures", () => {
     expect(await high()).toBe(first);
     await page.locator("#same-scale").press("Space");
     expect(await high()).not.toBe(first);
+    await page.context().close();
+  });
+});
+
+describe("the choice of the model", () => {
+  /** Presses Tab until the radio button that is checked has the focus. */
+  async function reach(page: Page): Promise<void> {
+    for (let presses = 0; presses < 30; presses++) {
+      await page.keyboard.press("Tab");
+      const found = await page.evaluate(() => document.activeElement?.getAttribute("name") === "model");
+      if (found) return;
+    }
+  }
+
+  const shown = async (page: Page) => ({
+    focus: await page.evaluate(() => document.activeElement?.id),
+    model: await page.locator("#model-name").textContent(),
+    pixels: [await pixels(page, "model"), await pixels(page, "residual"), await pixels(page, "sum-2")].join(),
+    rms: Number((await page.locator("#sum-2-rms").textContent())?.replace("rms ", "")),
+  });
+
+  it("is made with the keyboard alone, stays over frames, and changes map, residual and what is left over", async () => {
+    const { page, complaints } = await visit(addresses.whole);
+    await reach(page);
+    const whole = await shown(page);
+    expect(whole).toMatchObject({ focus: "model-whole", model: "Model: whole stack" });
+    expect(await page.evaluate(() => getComputedStyle(document.activeElement as Element).outlineStyle)).toBe(
+      "solid",
+    );
+    await page.keyboard.press("ArrowLeft");
+    const spot = await shown(page);
+    expect(spot).toMatchObject({ focus: "model-spot", model: "Model: each frame's spot" });
+    expect(spot.pixels).not.toBe(whole.pixels);
+    // the recording was drawn from these spots: their residuals are chance, and those of another light are not
+    expect(Math.abs(spot.rms - 1)).toBeLessThan(0.2);
+    expect(whole.rms).toBeGreaterThan(3);
+    await page.locator("#frame").press("End");
+    await page.locator("#frame").press("Home");
+    expect(await page.locator("#frame-text").textContent()).toMatch(/no spot was fitted$/);
+    await page.locator("#model-spot").press("ArrowRight");
+    expect(await page.locator("#frame-text").textContent()).toMatch(/the whole-stack fit leaves it out$/);
+    expect(complaints).toEqual([]);
+    await page.context().close();
+  });
+
+  it("begins with each frame's spot where the headline comes from the widths", async () => {
+    const { page } = await visit(addresses.beside);
+    expect(await page.locator("#model-spot").isChecked()).toBe(true);
+    expect(await page.locator("#model-name").textContent()).toBe("Model: each frame's spot");
+    expect(await page.locator("fieldset.choice legend").textContent()).toBe("Model");
+    expect(await page.locator("label:has(#model-whole)").textContent()).toContain(
+      "whole stack (diffusion and annihilation)",
+    );
+    await page.context().close();
+  });
+
+  it("is not offered where no whole-stack fit was made", async () => {
+    const { page } = await visit(addresses.map);
+    expect(await page.locator('input[name="model"]').count()).toBe(0);
+    expect(await page.locator("#model-name").textContent()).toBe("Model");
+    await page.context().close();
+  });
+});
+
+describe("what the model leaves over", () => {
+  it("is chance where the model is right: an rms near 1 early, in the middle and late", async () => {
+    const { page } = await visit(addresses.map);
+    for (const [i, reach] of [
+      [0, "0 to 2 ns, 5 frames"],
+      [1, "2.5 to 4.5 ns, 5 frames"],
+      [2, "5 to 7 ns, 5 frames"],
+    ] as const) {
+      expect(await page.locator(`#sum-${i}-text`).textContent()).toBe(reach);
+      const rms = Number((await page.locator(`#sum-${i}-rms`).textContent())?.replace("rms ", ""));
+      // some hundred cells hold light enough: four standard errors of an rms are 4/√200
+      expect(Math.abs(rms - 1)).toBeLessThan(4 / Math.sqrt(200));
+    }
+    await page.context().close();
+  });
+
+  it("is one map over all delays on a trace", async () => {
+    const { page } = await visit(addresses.trace);
+    expect(await page.locator("#sum-0-text").textContent()).toBe("0 to 20 ns, 41 frames");
+    expect(await page.locator(".sums canvas").count()).toBe(1);
+    const size = await page.evaluate(() => (document.getElementById("sum-0") as HTMLCanvasElement).height);
+    expect(size).toBe(24);
     await page.context().close();
   });
 });

@@ -1,7 +1,13 @@
 import { runInNewContext } from "node:vm";
+import { randomPoisson } from "d3-random";
+import { uniformFloat64 } from "pure-rand/distribution/uniformFloat64";
+import { xoroshiro128plus } from "pure-rand/generator/xoroshiro128plus";
 import { describe, expect, it } from "vitest";
 import { colourRamps } from "../../src/report/viewer-colours.ts";
-import { modelCells, residualCells } from "../../src/report/viewer-model.ts";
+import { cutShapes, shortNumber } from "../../src/report/viewer-cut.ts";
+import { modelCells, residualCells, wholeModelCells } from "../../src/report/viewer-model.ts";
+import { overlayShapes } from "../../src/report/viewer-overlay.ts";
+import { inGroups, residualSum } from "../../src/report/viewer-sum.ts";
 
 const region = { left: 3, top: 5, columns: 30, rows: 32, bin: 2, binDown: 2 };
 const map = { kind: "map", region, pixel: 0.1, excessNoise: 2, darkVariance: 0.25 } as const;
@@ -53,6 +59,118 @@ describe("residualCells", () => {
   });
 });
 
+describe("residualSum", () => {
+  const small = { ...map, region: { left: 0, top: 0, columns: 5, rows: 3, bin: 1, binDown: 1 } };
+  const flat = (value: number) => new Float64Array(15).fill(value);
+
+  it("adds frames and cells: n cells that are d too bright give n·d / √(n·variance)", () => {
+    const frames = [0, 1, 2].map(() => ({ light: flat(11), model: flat(10) }));
+    const { columns, rows, cells } = residualSum(frames, small, 2);
+    expect([columns, rows]).toEqual([3, 2]);
+    const variance = 2 * 10 + 0.25;
+    // 3 frames of 2 × 2 cells; at the ragged edges 3 frames of 2, and of one cell
+    expect(cells[0]).toBeCloseTo(12 / Math.sqrt(12 * variance), 12);
+    expect(cells[2]).toBeCloseTo(6 / Math.sqrt(6 * variance), 12);
+    expect(cells[5]).toBeCloseTo(3 / Math.sqrt(3 * variance), 12);
+  });
+
+  it("has an rms of 1 where the model is right: 900 sums of Poisson counts, to four standard errors", () => {
+    const generator = xoroshiro128plus(7);
+    const draw = randomPoisson.source(() => uniformFloat64(generator))(6);
+    const counting = {
+      region: { left: 0, top: 0, columns: 60, rows: 60, bin: 1, binDown: 1 },
+      excessNoise: 1,
+      darkVariance: 0,
+    };
+    const frames = [0, 1, 2, 3].map(() => ({
+      light: Float64Array.from({ length: 3600 }, () => draw()),
+      model: new Float64Array(3600).fill(6),
+    }));
+    const { rms } = residualSum(frames, counting, 2);
+    expect(Math.abs((rms ?? 0) - 1)).toBeLessThan(4 / Math.sqrt(2 * 900));
+  });
+
+  it("claims no rms where light is too dim to say", () => {
+    const dark = { ...small, excessNoise: 1, darkVariance: 0 };
+    expect(residualSum([{ light: flat(0), model: flat(0.1) }], dark, 2).rms).toBe(null);
+    expect(residualSum([], dark, 2).rms).toBe(null);
+  });
+});
+
+describe("inGroups", () => {
+  it("cuts places into consecutive groups that differ by one at most, never an empty one", () => {
+    expect(inGroups([3, 4, 5, 7, 8, 9, 10], 3)).toEqual([
+      [3, 4],
+      [5, 7, 8],
+      [9, 10],
+    ]);
+    expect(inGroups([4, 6], 3)).toEqual([[4], [6]]);
+    expect(inGroups([], 3)).toEqual([]);
+  });
+});
+
+describe("overlayShapes", () => {
+  it("turns the ellipse of a covariance R(30°) diag(0.25, 0.04) Rᵀ to 30° with half-axes 0.5 and 0.2 µm", () => {
+    const [c, s] = [Math.cos(Math.PI / 6), Math.sin(Math.PI / 6)];
+    const [xx, xy, yy] = [0.25 * c * c + 0.04 * s * s, (0.25 - 0.04) * c * s, 0.25 * s * s + 0.04 * c * c];
+    const [ellipse, bar] = overlayShapes([1, 2.3, 3.1, xx, xy, yy, 0], map, 2);
+    // cells of two pixels of 0.1 µm
+    expect(Number(ellipse?.[1].rx)).toBeCloseTo(0.5 / 0.2, 9);
+    expect(Number(ellipse?.[1].ry)).toBeCloseTo(0.2 / 0.2, 9);
+    const [x, y, turn] = String(ellipse?.[1].transform)
+      .match(/[-\d.]+/g)!
+      .map(Number);
+    expect(turn).toBeCloseTo(30, 9);
+    // the centre of pixel 0 lies at 0 µm, half a pixel inside the picture
+    expect(x).toBeCloseTo((23.5 - 3) / 2, 9);
+    expect(y).toBeCloseTo((31.5 - 5) / 2, 9);
+    expect(Number(bar?.[1].x2) - Number(bar?.[1].x1)).toBeCloseTo(2 / 0.2, 9);
+  });
+
+  it("draws nothing where there is neither spot nor bar", () => {
+    expect(overlayShapes(null, map, null)).toEqual([]);
+  });
+});
+
+describe("cutShapes", () => {
+  const cut = { along: "x", points: [0, 5, 10, 5, 0], curve: [], ends: [1, 5] } as const;
+  const dots = (shapes: ReturnType<typeof cutShapes>) =>
+    shapes.flatMap(([name, { cx, cy }]) => (name === "circle" ? [[Number(cx), Number(cy)]] : []));
+
+  it("places points evenly and in proportion, between axes with numbers at round places", () => {
+    const shapes = cutShapes(cut, shortNumber);
+    const [first, second, third] = dots(shapes);
+    expect((second?.[0] ?? 0) - (first?.[0] ?? 0)).toBeCloseTo((third?.[0] ?? 0) - (second?.[0] ?? 0), 9);
+    expect((first?.[1] ?? 0) - (second?.[1] ?? 0)).toBeCloseTo((second?.[1] ?? 0) - (third?.[1] ?? 0), 9);
+    const label = shapes.find(([name, , text]) => name === "text" && text === "3");
+    expect(Number(label?.[1].x)).toBeCloseTo(third?.[0] ?? 0, 9);
+    expect(shapes.some(([name]) => name === "polyline")).toBe(false);
+  });
+
+  it("draws the model through the points that it meets", () => {
+    const shapes = cutShapes({ ...cut, curve: cut.points }, shortNumber);
+    const line = shapes.find(([name]) => name === "polyline")?.[1].points;
+    expect(line).toBe(
+      dots(shapes)
+        .map(([x, y]) => `${x},${y}`)
+        .join(" "),
+    );
+  });
+});
+
+describe("shortNumber", () => {
+  it.each([
+    [0.30000000000000004, "0.3"],
+    [-2, "−2"],
+    [12_345.6, "12346"],
+    [2_500_000, "2.5e+6"],
+    [0.0004, "4.0e−4"],
+    [0, "0"],
+  ])("%d is %s", (value, text) => {
+    expect(shortNumber(value)).toBe(text);
+  });
+});
+
 describe("colourRamps", () => {
   const { light, residual } = colourRamps();
   const lightness = (ramp: Uint8ClampedArray, i: number) =>
@@ -79,6 +197,14 @@ describe("the text of each function", () => {
     expect([...alone(modelCells)(spot, map)]).toEqual([...modelCells(spot, map)]);
     expect([...alone(colourRamps)().light]).toEqual([...colourRamps().light]);
     expect([...alone(residualCells)(Float64Array.of(12), Float64Array.of(4), map)]).toEqual([8 / 3]);
+    const compared = [{ light: Float64Array.of(12), model: Float64Array.of(4) }];
+    expect(alone(residualSum)(compared, map, 2).cells[0]).toBe(residualSum(compared, map, 2).cells[0]);
+    expect(alone(inGroups)([1, 2], 2)).toEqual([[1], [2]]);
+    expect(alone(overlayShapes)(spot, map, 1)).toEqual(overlayShapes(spot, map, 1));
+    const cut = { along: "y", points: [1, 2], curve: [1, 2], ends: [0, 1] } as const;
+    expect(alone(cutShapes)(cut, alone(shortNumber))).toEqual(cutShapes(cut, shortNumber));
+    const levels = Uint16Array.of(3);
+    expect(alone(wholeModelCells)(levels, 0, 2, map)[0]).toBe(wholeModelCells(levels, 0, 2, map)[0]);
   });
 });
 
