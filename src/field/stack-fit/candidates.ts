@@ -48,11 +48,11 @@ export function fitCandidates(
   const pixels = data.frames.reduce((sum, { patch }) => sum + patch.data.length, 0);
   for (const candidate of CANDIDATES) {
     if (candidate.repulsion && repulsion === null) continue;
+    if (candidate.annihilation && candidate.capture && !eitherGains(found)) continue;
     const names = namesOf(data.kind, candidate, symmetry);
     const starts = startsOf(candidate, start, { annihilation: hint, repulsion: repulsion ?? 0 }, found);
-    const optima = starts.flatMap((values) => tryFit(data, names, values) ?? []);
-    if (optima.length === 0) continue;
-    const best = optima.reduce((a, b) => (b.deviance < a.deviance ? b : a));
+    const best = fitFrom(data, names, starts, toBeat(candidate, found));
+    if (best === null) continue;
     found.push({
       ...best,
       candidate,
@@ -67,10 +67,40 @@ export function fitCandidates(
   return { fits, preferred: prefer(fits), symmetry };
 }
 
+/** The first start's fit that converges, else the best; null where none can be fitted. */
+function fitFrom(
+  data: StackData,
+  names: readonly Name[],
+  starts: readonly Values[],
+  toBeat: number,
+): StackOptimum | null {
+  let best: StackOptimum | null = null;
+  for (const start of starts) {
+    const fit = tryFit(data, names, start, toBeat);
+    if (fit !== null && (best === null || fit.converged || fit.deviance < best.deviance)) best = fit;
+    if (best?.converged) break;
+  }
+  return best;
+}
+
+/** A fit with traps goes on only while it may gain this much over simpler ones: χ² with two more parameters. */
+const WORTH_A_FIT = 4;
+
+/** Whether annihilation or capture alone is worth anything over plain diffusion: if neither is, both are not fitted. */
+function eitherGains(found: readonly Omit<CandidateFit, "weight">[]): boolean {
+  const plain = found.find((fit) => fit.candidate.name === "diffusion");
+  return plain === undefined || found.some((fit) => fit.deviance < plain.deviance - WORTH_A_FIT);
+}
+
+function toBeat({ capture }: Candidate, found: readonly Omit<CandidateFit, "weight">[]): number {
+  if (!capture) return Number.POSITIVE_INFINITY;
+  return Math.min(...found.filter((fit) => fit.converged).map((fit) => fit.deviance)) - WORTH_A_FIT;
+}
+
 /** Null where no light follows from the start or from where the fit is led: that candidate is no candidate. */
-function tryFit(data: StackData, names: readonly Name[], start: Values): StackOptimum | null {
+function tryFit(data: StackData, names: readonly Name[], start: Values, toBeat: number): StackOptimum | null {
   try {
-    return fitStack(data, names, start);
+    return fitStack(data, names, start, toBeat);
   } catch (error) {
     if (error instanceof RangeError) return null;
     throw error;
@@ -121,10 +151,12 @@ function startsOf(
     case "capture":
       return [trapped(plain, 0.3, 1.5), trapped({ ...plain, tau: tau / 2 }, 0.6, 4)];
     case "annihilation_and_capture": {
-      const capture = before("capture");
+      const capture = found.find((fit) => fit.candidate.name === "capture" && fit.converged);
       const annihilation = before("annihilation");
       return [
-        ...(capture === null ? [] : [{ ...capture, k_n0: 0.05 / tau }]),
+        ...(capture === undefined
+          ? []
+          : [{ ...valuesOf(capture.names, capture.parameters), k_n0: 0.05 / tau }]),
         ...(annihilation === null ? [] : [trapped(annihilation, 0.2, 2)]),
       ];
     }

@@ -24,6 +24,10 @@ const MOST_STEPS = 12;
 /** The fit stands when the step that is left is shorter than this, in standard deviations. */
 const STANDSTILL = 0.01;
 const MOST_DAMPING = 1e6;
+/** From farther away, in standard deviations, what is left says little of where the fit will end. */
+const FORESEEABLE = 20;
+/** A fit that falls by less than a tenth of what its steps promise, this often in a row, is stuck in a bent valley. */
+const MOST_SLOW_STEPS = 3;
 
 /**
  * Maximum likelihood of a whole stack by damped Fisher scoring: (I + λ·diag I)·δ = s, λ down by ten where −2 ln L falls
@@ -31,8 +35,15 @@ const MOST_DAMPING = 1e6;
  * the scoring equations of McCullagh and Nelder 1989, section 2.5).
  *
  * @param start every parameter in `names`
+ * @param toBeat give up as soon as −2 ln L is not going to fall below this: at a maximum with parameters that nothing
+ *   speaks for the way is long and flat
  */
-export function fitStack(data: StackData, names: readonly Name[], start: Values): StackOptimum {
+export function fitStack(
+  data: StackData,
+  names: readonly Name[],
+  start: Values,
+  toBeat = Number.POSITIVE_INFINITY,
+): StackOptimum {
   const n = names.length;
   let p: Float64Array = Float64Array.from(names, (name) => start[name]!);
   let cost = deviance(data, names, p);
@@ -40,6 +51,7 @@ export function fitStack(data: StackData, names: readonly Name[], start: Values)
   let iterations = 0;
   let reason = "the step limit was reached";
   let converged = false;
+  let slow = 0;
   let { score, information, held } = scoreWithin(data, names, p);
   while (iterations < MOST_STEPS) {
     iterations++;
@@ -49,6 +61,11 @@ export function fitStack(data: StackData, names: readonly Name[], start: Values)
       reason = "a maximum was reached";
       break;
     }
+    // the step that is left promises a fall by its square
+    if (left !== null && left < FORESEEABLE && cost - 1.5 * left ** 2 > toBeat) {
+      reason = "a simpler model does as well";
+      break;
+    }
     const next = descend(data, names, p, cost, score, information, damping);
     if (next === null) {
       // nothing nearby is better: the rounding of −2 ln L hides the rest of a short step
@@ -56,7 +73,12 @@ export function fitStack(data: StackData, names: readonly Name[], start: Values)
       reason = converged ? "a maximum was reached" : "no step improves the fit";
       break;
     }
+    slow = left !== null && cost - next.cost > 0.1 * left ** 2 ? 0 : slow + 1;
     ({ p, cost, damping } = next);
+    if (slow === MOST_SLOW_STEPS && cost > toBeat) {
+      reason = "the fit stays behind a simpler model";
+      break;
+    }
     ({ score, information, held } = scoreWithin(data, names, p));
   }
   const covariance = information.slice();
@@ -140,7 +162,10 @@ function tryDeviance(data: StackData, names: readonly Name[], p: Float64Array): 
   }
 }
 
-/** Positive quantities shrink to a third of themselves at most in one step; rates may go a little below zero. */
+/**
+ * Positive quantities shrink to a third of themselves at most in one step; k·n₀ may go a little below zero. Capture may
+ * not: without caught excitons nothing tells it from 1/τ, and the fit would wander.
+ */
 function keepPossible(data: StackData, names: readonly Name[], from: Float64Array, to: Float64Array): void {
   const tau = valuesOf(names, from).tau!;
   for (const [i, name] of names.entries()) {
@@ -150,6 +175,7 @@ function keepPossible(data: StackData, names: readonly Name[], from: Float64Arra
     if (name === "background") to[i] = Math.max(to[i]!, 1e-7);
     // D(1 + β) stays above zero everywhere
     if (name === "repulsion") to[i] = Math.max(to[i]!, -0.3);
-    if (name === "k_n0" || name === "capture") to[i] = Math.max(to[i]!, -0.3 / tau);
+    if (name === "k_n0") to[i] = Math.max(to[i]!, -0.3 / tau);
+    if (name === "capture") to[i] = Math.max(to[i]!, from[i]! / 5);
   }
 }
