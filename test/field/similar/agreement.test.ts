@@ -80,6 +80,11 @@ describe("the Fourier solver agrees to 1e-5 of the peak", () => {
     ],
     ["trace without a slit", { kind: "trace", annihilation: 0.5 }],
     ["behind a slit, plain", { kind: "trace", slit: 0.3, blurVariance: 0.02 }],
+    ["repulsion", { repulsion: 1 }],
+    ["repulsion, fast and blurred", { repulsion: 3, diffusion: [0.05, 0, 0.05], blurVariance: 0.03 }],
+    ["turned spot and tensor, repulsion", { ...TURNED, repulsion: 0.5 }],
+    ["behind a slit, repulsion", { kind: "trace", slit: 0.3, repulsion: 1, blurVariance: 0.02 }],
+    ["repulsion, annihilation and capture", { repulsion: 1, annihilation: 0.5, capture: 0.15 }],
     ["with the instrument's response", { annihilation: 0.5, responseSigma: 0.2 }],
     ["no motion", { diffusion: [0, 0, 0], annihilation: 0.1, capture: 0.1 }],
   ])("%s", (_, part) => {
@@ -90,6 +95,7 @@ describe("the Fourier solver agrees to 1e-5 of the peak", () => {
     ["annihilation between pulses", { annihilation: 0.5, period: 5 }],
     ["annihilation and capture", { annihilation: 1, capture: 0.1, period: 9, delays: [-1, 0.7, 3] }],
     ["turned", { ...TURNED, annihilation: 0.5, period: 9, delays: [0, 7] }],
+    ["repulsion", { repulsion: 1, period: 4, lifetime: 2, delays: [-0.5, 0.7, 3] }],
   ])("pulse after pulse until the steady state: %s", (_, part) => {
     expect(disagreement(problem(PIXELS, part))).toBeLessThan(1e-5);
   });
@@ -97,6 +103,8 @@ describe("the Fourier solver agrees to 1e-5 of the peak", () => {
   it.each<[string, Partial<SimilarProblem>]>([
     ["annihilation", { annihilation: 0.5 }],
     ["turned, with capture", { ...TURNED, annihilation: 1.5, capture: 0.2 }],
+    ["repulsion", { repulsion: 5 }],
+    ["turned, with repulsion and annihilation", { ...TURNED, repulsion: 2, annihilation: 0.3 }],
   ])("on how far excitons travel: %s", (_, part) => {
     const p = problem(part);
     const d = (p.diffusion[0] + p.diffusion[2]) / 2;

@@ -73,6 +73,27 @@ describe("closed forms", () => {
     expect(Math.abs(slope / expected - 1)).toBeLessThan(1e-4);
   });
 
+  it("repulsion spreads it at first by 2D(1 + β/4) along every axis, and loses nothing", () => {
+    const [beta, h] = [2, 0.02];
+    const grid = square(2.6, 0.05);
+    for (const shape of [{}, TURNED]) {
+      const p = problem({ repulsion: beta, lifetime: Infinity, delays: [0, h, 2 * h, 12] }, shape);
+      const light = similarLight(p);
+      const [v0, v1, v2] = [0, 1, 2].map((i) => moments(picture(light, i, grid), grid).covariance);
+      for (const i of [0, 1, 2] as const) {
+        const slope = (4 * v1![i] - v2![i] - 3 * v0![i]) / (2 * h);
+        expect(Math.abs(slope - 2 * p.diffusion[i] * (1 + beta / 4))).toBeLessThan(
+          1e-4 * 2 * p.diffusion[0] * (1 + beta / 4),
+        );
+      }
+      expect(light.amount(3)).toBeCloseTo(1, 12);
+    }
+  });
+
+  it("repulsion needs diffusion to push along: a D of zero or below is refused", () => {
+    expect(() => similarLight(problem({ repulsion: 1, diffusion: [-0.001, 0, -0.001] }))).toThrow(RangeError);
+  });
+
   it("an elliptical spot loses as many excitons as the round one of the same area and mapped diffusion", () => {
     const round = similarLight(problem({ annihilation: 1 }));
     const stretched = similarLight(

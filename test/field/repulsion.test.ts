@@ -1,0 +1,237 @@
+import { describe, expect, it } from "vitest";
+import { Evolution } from "../../src/field/evolution.ts";
+import { type Grid, gridFor, moments } from "../../src/field/grid.ts";
+import { type Medium, peakDensity, plainMedium, type Start } from "../../src/field/medium.ts";
+import { pushedTime } from "../../src/field/pushed-spread.ts";
+import { nodesOver } from "../../src/field/quadrature.ts";
+import { readScenario } from "../../src/field/scenario.ts";
+import { expectation } from "../../src/field/synthesise.ts";
+import { movingTime } from "../../src/field/travel.ts";
+import type { Covariance } from "../../src/frame/spot.ts";
+
+const ROUND: Start = { amount: 1, covariance: [0.1, 0, 0.1] };
+const TURNED: Start = { amount: 1, covariance: [0.1, 0.02, 0.08] };
+const TENSOR: Covariance = [0.02, 0.006, 0.01];
+
+function pushed(beta: number, diffusion: Covariance, start: Start, lifetime = 6): Medium {
+  return { ...plainMedium(diffusion, lifetime), repulsion: beta / peakDensity(start) };
+}
+
+function gridUpTo(medium: Medium, start: Start, t: number, clearance = 6, resolution = 3): Grid {
+  const reached = pushedTime(medium, start, t);
+  return gridFor(start.covariance, medium.diffusion, reached, { clearance, resolution });
+}
+
+const SIDE = 64;
+
+/** ∫n² dA/∫n dA */
+function meanDensity(field: Float64Array): number {
+  let [one, two] = [0, 0];
+  for (const n of field) {
+    one += n;
+    two += n * n;
+  }
+  return two / one;
+}
+
+describe("Evolution with repulsion", () => {
+  it.each([0.3, 1, 5])(
+    "widens at first by dΣ/dt = 2D(1 + β/4), a turned tensor alike: β = %d (second moment of ½b∇·D∇n² for a Gaussian)",
+    (beta) => {
+      const medium = pushed(beta, TENSOR, TURNED, Infinity);
+      const growth = (t: number): number[] => {
+        const grid = gridUpTo(medium, TURNED, t, 8, 4);
+        const evolution = new Evolution(medium, TURNED, grid, 1e-9);
+        evolution.advance(t);
+        const { covariance } = moments(grid, evolution.free);
+        return covariance.map((value, i) => (value - TURNED.covariance[i]!) / t);
+      };
+      // Neville's extrapolation of difference quotients to t = 0
+      const h = 0.2 / (1 + beta);
+      const [a, b, c] = [growth(h), growth(h / 2), growth(h / 4)];
+      TENSOR.forEach((d, i) => {
+        const atZero = (4 * (2 * c[i]! - b[i]!) - (2 * b[i]! - a[i]!)) / 3;
+        expect(Math.abs(atZero / (2 * d * (1 + beta / 4)) - 1)).toBeLessThan(1e-4);
+      });
+    },
+  );
+
+  it("widens ever after by dσ²/dt = 2D + Db∫n²/∫n per axis, decay or not (second moment, twice by parts)", () => {
+    const d = 0.02;
+    const medium = pushed(4, [d, 0, d], ROUND, 3);
+    const grid = gridUpTo(medium, ROUND, 6);
+    const evolution = new Evolution(medium, ROUND, grid, 1e-8);
+    let before = 0.1;
+    for (const [from, to] of [
+      [0, 1],
+      [1, 3],
+      [3, 6],
+    ] as const) {
+      let gained = 2 * d * (to - from);
+      for (const { at, weight } of nodesOver(from, to, 6)) {
+        evolution.advance(at);
+        gained += weight * d * medium.repulsion * meanDensity(evolution.free);
+      }
+      evolution.advance(to);
+      const now = moments(grid, evolution.free).covariance[0];
+      expect(Math.abs((now - before) / gained - 1)).toBeLessThan(1e-6);
+      before = now;
+    }
+  });
+
+  it("keeps the number of excitons to 1e-10 and no density below zero by 1e-6 of the peak, for β up to 10", () => {
+    for (const [beta, start, diffusion] of [
+      [0.5, TURNED, TENSOR],
+      [10, ROUND, [0.01, 0, 0.01]],
+    ] as const) {
+      const medium = pushed(beta, diffusion, start, 6);
+      const grid = gridUpTo(medium, start, 2);
+      const evolution = new Evolution(medium, start, grid, 1e-6);
+      const before = moments(grid, evolution.free).amount;
+      for (const t of [0.1, 0.5, 2]) {
+        evolution.advance(t);
+        const { amount } = moments(grid, evolution.free);
+        expect(Math.abs(amount / before / Math.exp(-t / 6) - 1)).toBeLessThan(1e-10);
+        expect(Math.min(...evolution.free)).toBeGreaterThan(-1e-6 * evolution.peak);
+      }
+    }
+  });
+
+  it("becomes Barenblatt's n = t^(−½)(C − r²/16√t) of n_t = Δn² where bn ≫ 1 (Vázquez, The Porous Medium Equation, 2007, ch. 4)", () => {
+    // n_t = ½bD Δn² with D as small as it gets: error of first order in 1/(bn), extrapolated to none
+    const c = 1;
+    const radius = (t: number): number => 4 * Math.sqrt(c) * t ** 0.25;
+    const run = (share: number) => {
+      const start: Start = { amount: 2 * Math.PI * c, covariance: [1, 0, 1] };
+      const medium: Medium = { ...plainMedium([share, 0, share], Infinity), repulsion: 2 / share };
+      const grid: Grid = { nx: SIDE, ny: SIDE, hx: 18 / SIDE, hy: 18 / SIDE };
+      const evolution = new Evolution(medium, start, grid, 1e-4);
+      for (let iy = 0; iy < SIDE; iy++) {
+        for (let ix = 0; ix < SIDE; ix++) {
+          const [x, y] = [ix, iy].map((i) => (i < SIDE / 2 ? i : i - SIDE) * grid.hx) as [number, number];
+          evolution.free[iy * SIDE + ix] = Math.max(c - (x * x + y * y) / 16, 0);
+        }
+      }
+      evolution.advance(4);
+      return [evolution.free[0]!, moments(grid, evolution.free).covariance[0]];
+    };
+    const [coarse, fine] = [run(0.04), run(0.02)];
+    const [centre, variance] = fine.map((value, i) => 2 * value - coarse[i]!);
+    expect(Math.abs(centre! / (c / Math.sqrt(5)) - 1)).toBeLessThan(2e-3);
+    // ∫r²(1 − r²/R²)/∫(1 − r²/R²) = R²/3, half of it per axis
+    expect(Math.abs(variance! / (radius(5) ** 2 / 6) - 1)).toBeLessThan(2e-3);
+  });
+
+  it.each([
+    [0.1, 0, 0, 1],
+    [1, 0, 0, 1],
+    [3, 0, 1, 1],
+    [1, 5, 0, 1],
+    [10, 0, 0, 0.3],
+  ])(
+    "holds its tolerance when the step is halved: β = %d, k n₀ τ = %d, c τ = %d, Dτ/σ² = %d",
+    (beta, kT, cT, q) => {
+      const d = (q * 0.1) / 6;
+      const medium: Medium = {
+        ...pushed(beta, [d, 0, d], ROUND),
+        annihilation: kT / 6 / peakDensity(ROUND),
+        capture: cT / 6,
+        trapLight: 1,
+        trapLifetime: 20,
+      };
+      const grid = gridUpTo(medium, ROUND, 12, 5, 2.5);
+      const run = (tolerance: number, halved: boolean) => {
+        const evolution = new Evolution(medium, ROUND, grid, tolerance);
+        // stops in between make shorter steps
+        if (halved) for (let t = 0.02; t < 12; t += 0.02 + t / 60) evolution.advance(t);
+        evolution.advance(12);
+        const caught = new Float64Array(evolution.free.length);
+        evolution.transform.toField(evolution.caught.slice(), caught);
+        return evolution.free.map((n, i) => n + caught[i]!);
+      };
+      const coarse = run(1e-6, false);
+      const fine = run(1e-12, true);
+      const peak = Math.max(...fine);
+      const error = Math.max(...coarse.map((light, i) => Math.abs(light - fine[i]!))) / peak;
+      expect(error).toBeLessThan(1e-6);
+    },
+  );
+
+  it("does not change by more than 2e-6 on a grid twice as fine and wider", () => {
+    const medium = pushed(2, TENSOR, TURNED);
+    const run = (clearance: number, resolution: number) => {
+      const grid = gridUpTo(medium, TURNED, 3, clearance, resolution);
+      const evolution = new Evolution(medium, TURNED, grid, 1e-7);
+      evolution.advance(3);
+      const { amount, covariance } = moments(grid, evolution.free);
+      return [amount, covariance[0], covariance[1], covariance[2], evolution.free[0]!];
+    };
+    const normal = run(6, 3);
+    run(7, 6).forEach((fine, i) => {
+      expect(Math.abs(normal[i]! / fine - 1)).toBeLessThan(2e-6);
+    });
+  });
+});
+
+describe("movingTime with repulsion", () => {
+  it.each([1, 8])("times D is ½⟨x²⟩ of where excitons end, less that of the start: β = %d", (beta) => {
+    const tau = 1.5;
+    const d = 0.05;
+    const medium = pushed(beta, [d, 0, d], ROUND, tau);
+    const end = 9;
+    const grid = gridUpTo(medium, ROUND, end, 5.5, 2.5);
+    const evolution = new Evolution(medium, ROUND, grid, 1e-6);
+    const travelled = () => 0.5 * (moments(grid, evolution.free).covariance[0] - 0.1);
+    let ends = 0;
+    for (const [from, to] of [
+      [0, 1],
+      [1, 4],
+      [4, end],
+    ] as const) {
+      for (const { at, weight } of nodesOver(from, to, 4 / (to - from) + 1 / tau)) {
+        evolution.advance(at);
+        ends += (weight * travelled() * Math.exp(-at / tau)) / tau;
+      }
+    }
+    evolution.advance(end);
+    // the few that are left spread by themselves
+    ends += Math.exp(-end / tau) * (travelled() + d * tau);
+    expect(Math.abs((d * movingTime(medium, ROUND)) / ends - 1)).toBeLessThan(2e-5);
+  });
+});
+
+describe("a scenario with repulsion", () => {
+  const text = (repulsion: number) => `[recording]
+frames = 4
+width = 24
+height = 24
+photons = 1e4
+[space]
+pixel = "0.1 um"
+[time]
+first = "0 ns"
+step = "1 ns"
+[motion]
+diffusion_coefficient = "0.2 cm^2/s"
+sigma0 = "0.3 um"
+repulsion = ${repulsion}
+[life]
+lifetime = "5 ns"`;
+
+  it("has motion.repulsion as by how much of itself D is larger at the peak, and its truth says so", () => {
+    const scenario = readScenario(text(0.8), "scenario.toml");
+    expect(scenario.medium.repulsion * peakDensity(scenario.start)).toBeCloseTo(0.8, 12);
+    const { truth } = expectation(scenario);
+    expect(truth.repulsion).toBe(0.8);
+    const variances = truth.frames.map(({ variance_um2 }) => variance_um2);
+    // faster than 2D, slower than 2D(1 + β/4), which is only the beginning
+    const first = (variances[1]! - variances[0]!) / (2 * 0.02);
+    expect(first).toBeGreaterThan(1.1);
+    expect(first).toBeLessThan(1.2);
+  });
+
+  it("is refused below zero and where its value has a slip", () => {
+    expect(() => readScenario(text(-1), "scenario.toml")).toThrow(/motion\.repulsion = -1 is below zero/);
+    expect(() => readScenario(text(1e4), "scenario.toml")).toThrow(/motion\.repulsion is more than 100/);
+  });
+});

@@ -1,0 +1,75 @@
+import { describe, expect, it } from "vitest";
+import { analysed, codesOf, type Keys, pull, recorded } from "./recordings.ts";
+
+const DIPOLAR = { layer_distance: "0.65 nm", temperature: "30 K", density: "2e11 cm^-2" };
+
+function pushed(beta: number, changes: Keys = {}, seed = 1) {
+  return recorded(
+    {
+      recording: { photons: 1e5 },
+      motion: { repulsion: beta },
+      sample: DIPOLAR,
+      ...changes,
+    },
+    seed,
+  );
+}
+
+describe("dipolar excitons that repel each other", () => {
+  const { stack, truth } = pushed(1);
+  const { result } = analysed(stack);
+  const { field, quantities, verdict } = result;
+
+  it("give D of few excitons, L, τ and β of the truth from the whole stack", () => {
+    expect(field?.preferred).toBe("repulsion");
+    const { diffusion_coefficient: d, lifetime, diffusion_length: length } = quantities;
+    expect([d.from, lifetime?.from, length?.from]).toEqual(["field", "field", "field"]);
+    expect(Math.abs(pull(d, truth.diffusion_coefficient_cm2_per_s))).toBeLessThan(3);
+    expect(Math.abs(pull(lifetime!, truth.lifetime_ns))).toBeLessThan(3);
+    expect(Math.abs(pull(length!, truth.diffusion_length_um))).toBeLessThan(3);
+    const beta = field!.repulsion!;
+    expect(Math.abs(pull({ value: beta.value, u: beta.u! }, 1))).toBeLessThan(3);
+    // the widths alone are off by a tenth, far beyond their error bar
+    expect(pull(result.transport.models.line!.parameters.D!, 0.02)).toBeGreaterThan(20);
+  });
+
+  it("say what energy that is: β·k_BT, 2.585 meV at 30 K, and u₀ by the stated density of 2000 µm⁻²", () => {
+    const { repulsion, u0_n0, u0 } = field!;
+    expect(u0_n0!.value / repulsion!.value).toBeCloseTo(2.5852, 4);
+    expect(u0!.value).toBeCloseTo(u0_n0!.value / 2, 10);
+  });
+
+  it("are not called sound, and the widths' claim is named", () => {
+    expect(verdict.level).toBe("caution");
+    expect(codesOf(result)).toContain("widths-would-mislead");
+    expect(codesOf(result)).toContain("repulsion-suspected");
+    expect(codesOf(result)).not.toContain("annihilation-suspected");
+  });
+
+  it("are fitted with plain diffusion where they do not repel each other, the line's D standing", () => {
+    const plain = analysed(pushed(0).stack).result;
+    expect(plain.field?.preferred).toBe("diffusion");
+    expect(plain.field?.repulsion).toBe(null);
+    expect(plain.quantities.diffusion_coefficient.from).toBe("line");
+    expect(plain.verdict.level).toBe("sound");
+  });
+
+  it("without a fit of the whole stack are never sound: how much ΔE/4k_BT may hide is said", () => {
+    const told = pushed(0, { sample: { ...DIPOLAR, blue_shift: "4 meV", permittivity: "7" } });
+    const { result: alone } = analysed(told.stack, { field: "never" });
+    expect(alone.verdict.level).toBe("caution");
+    // 4 meV over 4 × 2.585 meV
+    expect(alone.verdict.reasons.find(({ code }) => code === "repulsion-not-tested")?.text).toContain("39 %");
+  });
+});
+
+describe("repulsion that nobody told of", () => {
+  it("is seen by a flat top and motion that dies out while the light falls as one exponential", () => {
+    const { stack } = pushed(1, { sample: { name: "Alder" } });
+    const { result } = analysed(stack, { field: "never" });
+    expect(result.verdict.level).not.toBe("sound");
+    expect(codesOf(result)).toContain("repulsion-suspected");
+    expect(codesOf(result)).not.toContain("annihilation-suspected");
+    expect(analysed(stack).result.field?.candidates.map(({ name }) => name)).not.toContain("repulsion");
+  });
+});
