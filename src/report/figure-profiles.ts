@@ -33,7 +33,7 @@ export function profileFigure(drawing: Drawing, analysis: Analysis): string {
   const node = plot.plot({
     ...common(drawing, HEIGHT),
     marginTop: 26,
-    fx: { label: null, domain: chosen.map(({ row }) => panelName(row)), padding: 0.06 },
+    fx: { label: null, domain: chosen.map(({ row }) => panelName(row)), padding: 0.14 },
     x: {
       label: "x − centre (µm)",
       domain: [-reach || -1, reach || 1],

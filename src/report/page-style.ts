@@ -128,6 +128,7 @@ footer p { max-width: none; margin-bottom: 0.3rem; }
   main, .top, footer { padding-left: 1rem; padding-right: 1rem; }
   .maps { gap: 0.6rem; }
   .choice legend { float: none; }
+  .candidates thead th { white-space: nowrap; }
   .sums figcaption span { font-size: 0.8rem; }
   .frame-maps { grid-template-columns: 1fr 1fr; }
   .map .frame-maps > :last-child, .trace .sums > :last-child { grid-column: 1 / -1; }
@@ -144,16 +145,18 @@ footer p { max-width: none; margin-bottom: 0.3rem; }
   .numbers { grid-template-columns: repeat(4, 1fr); margin: 0.8rem 0; }
   .number { padding: 0.5rem 0.6rem; }
   .number .value { font-size: 12pt; }
-  .number dt, .number .range, figcaption, table, .ramp { font-size: 8pt; }
+  .number dt, .number .range, figcaption, table, .ramp, section .soft { font-size: 8pt; }
   .pair { display: grid; grid-template-columns: 1fr 1fr; gap: 1rem; }
   .reasons { gap: 0.5rem; }
   section { padding: 1rem 0 0; }
   .controls { break-after: avoid; margin-bottom: 0.4rem; }
-  .tables table, figure, .number, .reasons li, tr, .quote p, .maps, .beside { break-inside: avoid; }
-  h2, h3, caption, .ruled > p { break-after: avoid; }
+  .tables table, .scroll:not(.tall) table, figure, .number, .reasons li, tr, .quote p, .maps, .beside { break-inside: avoid; }
+  h2, h3, h3 + p, caption, .ruled > p { break-after: avoid; }
+  .scroll + p.soft { break-after: auto; }
   .number .missing { font-size: 9pt; }
   #viewer ~ figure .figure { max-width: 26rem; }
   section + section { margin-top: 0.5rem; }
+  footer { padding: 0.6rem 0 0; break-inside: avoid; }
   canvas { print-color-adjust: exact; -webkit-print-color-adjust: exact; }
   details::details-content { content-visibility: visible; height: auto; }
   .frames-table { font-size: 7.5pt; }
