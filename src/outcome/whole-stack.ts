@@ -141,19 +141,22 @@ export function stackDataOf(reading: Reading): StackData {
 
 /**
  * Patches wide enough for the free excitons, and how far to look in each frame, pixels. Where traps hold the widths back
- * the free ones still spread as the early frames do, and their light must not be taken for background.
+ * the free ones still spread as the early frames do, and their light must not be taken for background; nor that of earlier
+ * pulses, weaker the older it is but wider: e^(−r²/2σ²) of it counts as far as e^(−REACH²/2) does of the newest.
  */
 function roomFor(reading: Reading): { patches: readonly Patch[]; reachOf: (frame: number) => number } {
   const { stack, frames, models, times, widths, line } = reading;
   const { early } = halves(reading);
   const free = Math.max(early.value, meanDiffusion(line).value, 0);
   const start = Math.max(...models.variance(widths[0]!.frame).filter((_, a) => a !== 1));
+  const glow = glowOf(reading);
   const reachOf = (i: number): number => {
     const measured = Math.max(...models.variance(i).filter((_, a) => a !== 1));
-    return (
-      (REACH * Math.sqrt(Math.max(measured, start + 2 * FREER * free * Math.max(times[i]!, 0)))) /
-      frames.pixel
+    const spread = start + 2 * FREER * free * Math.max(times[i]!, 0);
+    const squares = glow.map(
+      ({ later, weight }) => (spread + 2 * FREER * free * later) * (REACH ** 2 + 2 * Math.log(weight)),
     );
+    return Math.sqrt(Math.max(REACH ** 2 * measured, REACH ** 2 * spread, ...squares)) / frames.pixel;
   };
   const needed = reachOf(widths.at(-1)!.frame);
   const { rectangle } = frames;
@@ -165,6 +168,18 @@ function roomFor(reading: Reading): { patches: readonly Patch[]; reachOf: (frame
     excludeFrom(patch, findStrikes(frames.kind, patch, referenceAt(frames, models, i), frames.noise));
   }
   return { patches: wider.patches, reachOf };
+}
+
+/** How much older earlier pulses are, and what part of them is left: until they add nothing within the reach. */
+function glowOf({ stack, decays }: Reading): { later: number; weight: number }[] {
+  const { period } = stack.acquisition;
+  const decay = decays?.fits[decays.preferred] ?? null;
+  if (period === null || decay === null) return [];
+  const glow: { later: number; weight: number }[] = [];
+  for (let later = period; later < (REACH ** 2 / 2) * decay.amplitudeAveraged.value; later += period) {
+    glow.push({ later, weight: Math.exp(-later / decay.amplitudeAveraged.value) });
+  }
+  return glow;
 }
 
 /**
