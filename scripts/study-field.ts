@@ -9,7 +9,7 @@ import { appendFileSync } from "node:fs";
 import { availableParallelism } from "node:os";
 import { parseArgs } from "node:util";
 import { isMainThread, parentPort, Worker, workerData } from "node:worker_threads";
-import { type Answer, answer, CASES, prepare } from "../test/field/stack-fit/field-stacks.ts";
+import { type Answer, answer, CASES, draw, prepare } from "../test/field/stack-fit/field-stacks.ts";
 
 interface Work {
   readonly name: string;
@@ -18,13 +18,13 @@ interface Work {
   readonly stride: number;
 }
 
-type Reply = Answer | { readonly k: number; readonly error: string };
+type Reply = (Answer & { readonly k: number }) | { readonly k: number; readonly error: string };
 
 function work({ name, first, last, stride }: Work): void {
   const prepared = prepare(name);
   for (let k = first; k < last; k += stride) {
     try {
-      parentPort!.postMessage(answer(prepared, k));
+      parentPort!.postMessage({ k, ...answer(prepared, draw(prepared, k)) });
     } catch (error) {
       parentPort!.postMessage({ k, error: error instanceof Error ? error.message : String(error) });
     }

@@ -57,6 +57,10 @@ export const CASES: Readonly<Record<string, Case>> = {
   // a trace's pixel holds the background of a column's four pixels
   slit: of("slit", "annihilation", { background: 1.2 }),
   amplified: of("annihilation", "annihilation", { detector: AMPLIFIED }),
+  // the same with so little light that k·n₀ is five of its standard uncertainties, c four
+  "annihilation-dim": of("annihilation-weak", "annihilation", { photons: 2.8e5 }),
+  "capture-dim": of("capture-weak", "capture", { photons: 4e4 }),
+  "both-dim": of("both", "annihilation_and_capture", { photons: 4e4 }),
 };
 
 /** What the script says of a stack; µm and ns. */
@@ -145,8 +149,14 @@ export function draw({ frames, height, width, acquisition }: Prepared, k: number
   return memoryStack({ frames: counts, height, width, acquisition });
 }
 
+/** The mean itself as a recording: what is found off the truth is the solver's or the fit's doing. */
+export function noiseless({ frames, height, width, acquisition }: Prepared): Stack {
+  const { offset, gain } = acquisition.detector;
+  const counts = frames.map((frame) => frame.map((photons) => offset + gain * photons));
+  return memoryStack({ frames: counts, height, width, acquisition });
+}
+
 export interface Answer {
-  readonly k: number;
   readonly preferred: CandidateName | "none";
   /** (fit − truth)/u of every parameter of the candidate that the stack was made with, and of L by it. */
   readonly pulls: Readonly<Record<string, number>>;
@@ -157,16 +167,15 @@ export interface Answer {
   readonly converged: boolean;
 }
 
-/** Reads draw k and fits it whole, on the road that the command line takes. */
-export function answer(prepared: Prepared, k: number): Answer {
-  const reading = readRecording(draw(prepared, k));
+/** Reads a recording and fits it whole, on the road that the command line takes. */
+export function answer(prepared: Prepared, stack: Stack): Answer {
+  const reading = readRecording(stack);
   const whole = fitWholeStack(reading, joinFits(reading));
-  if (whole === null) return { k, preferred: "none", pulls: {}, p: null, aicc: {}, converged: false };
+  if (whole === null) return { preferred: "none", pulls: {}, p: null, aicc: {}, converged: false };
   const { fits, preferred } = whole.fits;
   const fit = fits.find((each) => each.candidate.name === prepared.made);
   const lowest = Math.min(...fits.map((each) => each.aicc));
   return {
-    k,
     preferred: preferred.candidate.name,
     pulls: fit?.converged ? pullsOf(prepared, whole, fit) : {},
     p: fit?.goodness.pValue ?? null,
