@@ -14,12 +14,15 @@ export interface Goodness {
 /** Edges of the rings around the spot, in standard deviations of the frame's spot. */
 const RINGS = [0.7, 1.2, 1.7, 2.3, 3.2] as const;
 const GROUPS = 10;
+/** What changes nothing in a ring around the centre; of xx and yy one is its width. */
+const UNSEEN: readonly Name[] = ["x", "y", "s_xy", "s_yy", "D_xy", "D_yy"];
 
 /**
  * Goodness of fit of a whole-stack model: the light in rings around the spot, in groups of neighbouring frames, against
  * the model's, as Pearson's χ². A single pixel holds too few photons to say anything about the model; a ring of a group
- * holds enough. The parameters are counted off the degrees of freedom, which is exact only for fits to these very
- * cells (Chernoff and Lehmann, Ann. Math. Stat. 25 (1954) 579: the truth lies between counting them and not).
+ * holds enough. The parameters that rings can see are counted off the degrees of freedom, which is exact only for fits
+ * to these very cells (Chernoff and Lehmann, Ann. Math. Stat. 25 (1954) 579: the truth lies between counting them and
+ * not); centre and ellipticity leave a ring's light as it is and are not counted.
  */
 export function goodnessOf(data: StackData, names: readonly Name[], p: Float64Array): Goodness {
   const cells = RINGS.length + 1;
@@ -46,6 +49,7 @@ export function goodnessOf(data: StackData, names: readonly Name[], p: Float64Ar
     chi2 += sums[c]! ** 2 / variances[c]!;
     used++;
   }
-  const degreesOfFreedom = Math.max(used - names.length, 1);
+  const seen = names.filter((name) => !UNSEEN.includes(name)).length;
+  const degreesOfFreedom = Math.max(used - seen, 1);
   return { chi2, degreesOfFreedom, pValue: chiSquareUpperTail(chi2, degreesOfFreedom) };
 }
