@@ -51,7 +51,8 @@ export function fitCandidates(
     if (candidate.annihilation && candidate.capture && !eitherGains(found)) continue;
     const names = namesOf(data.kind, candidate, symmetry);
     const starts = startsOf(candidate, start, { annihilation: hint, repulsion: repulsion ?? 0 }, found);
-    const best = fitFrom(data, names, starts, toBeat(candidate, found));
+    const tries = isDescribed(found) ? starts.slice(0, 1) : starts;
+    const best = fitFrom(data, names, tries, toBeat(candidate, found));
     if (best === null) continue;
     found.push({
       ...best,
@@ -83,6 +84,13 @@ function fitFrom(
   return best;
 }
 
+/** Where a simpler model describes the recording, a richer one that adds to it is found from its best start or not at all. */
+function isDescribed(found: readonly Omit<CandidateFit, "weight">[]): boolean {
+  return found.some((fit) => fit.converged && fit.goodness.pValue > DESCRIBED);
+}
+
+const DESCRIBED = 0.05;
+
 /** A fit with traps goes on only while it may gain this much over simpler ones: χ² with two more parameters. */
 const WORTH_A_FIT = 4;
 
@@ -107,10 +115,18 @@ function tryFit(data: StackData, names: readonly Name[], start: Values, toBeat: 
   }
 }
 
+/** A rate below zero is nothing that could happen: what such a fit gains is chance. */
+function isPossible({ names, parameters }: CandidateFit): boolean {
+  return ["k_n0", "capture", "repulsion"].every((name) => {
+    const i = (names as readonly string[]).indexOf(name);
+    return i < 0 || parameters[i]! >= 0;
+  });
+}
+
 function prefer(fits: readonly CandidateFit[]): CandidateFit {
   let best = fits[0]!;
   for (const fit of fits.slice(1)) {
-    if (!fit.converged) continue;
+    if (!fit.converged || !isPossible(fit)) continue;
     const price = PRICE * (fit.names.length - best.names.length);
     if (!best.converged || fit.aicc < best.aicc - price) best = fit;
   }
