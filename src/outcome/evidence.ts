@@ -76,10 +76,24 @@ const BRIGHT = 8;
 const GROUPS = 32;
 
 function shapeOf(reading: Reading): Sign {
-  const { frames, widths, light } = reading;
-  const bright = widths
-    .map((width) => width.frame)
-    .filter((i) => light.value[i]! >= BRIGHT * light.sigma[i]!);
+  return shapeAmong(reading, brightFrames(reading));
+}
+
+/** The first of the bright frames, this part of them: before annihilation and traps have done much. */
+const FIRST = 0.1;
+
+/** q of the spot's shape in the first frames. */
+export function firstShape(reading: Reading): Sign {
+  const bright = brightFrames(reading);
+  return shapeAmong(reading, bright.slice(0, Math.ceil(FIRST * bright.length)));
+}
+
+function brightFrames({ widths, light }: Reading): number[] {
+  return widths.map((width) => width.frame).filter((i) => light.value[i]! >= BRIGHT * light.sigma[i]!);
+}
+
+function shapeAmong(reading: Reading, bright: readonly number[]): Sign {
+  const { frames } = reading;
   const size = Math.ceil(bright.length / GROUPS);
   let score = 0;
   let information = 0;

@@ -37,7 +37,8 @@ export function isMisled(verdict: Result["verdict"]): boolean {
  */
 export function isAdopted(verdict: Result["verdict"], whole: WholeStack): boolean {
   const { preferred } = whole.fits;
-  const explains = preferred.candidate.name !== "diffusion" || whole.data.period !== null;
+  const explains =
+    preferred.candidate.name !== "diffusion" || whole.data.period !== null || hasFoot(preferred);
   return (isMisled(verdict) || preferred.candidate.repulsion) && explains && describes(preferred);
 }
 
@@ -115,9 +116,22 @@ function wouldMislead(fit: CandidateFit, line: Quantities["quantities"]["diffusi
   return reason(
     "caution",
     "widths-would-mislead",
-    `the widths alone would have claimed D = ${claimed}, which is wrong because ${because(fit)}; the numbers come from the fit of the whole stack, which describes it`,
+    `the widths alone would have claimed D = ${claimed}, which is wrong because ${because(fit)}${fit.candidate.name !== "diffusion" && hasFoot(fit) ? `, and ${startText(fit)}` : ""}; the numbers come from the fit of the whole stack, which describes it`,
     "quote them with the model and its parameters, and confirm by a recording at another excitation density or temperature",
   );
+}
+
+function hasFoot({ names }: CandidateFit): boolean {
+  return names.includes("foot_share");
+}
+
+/** "the spot starts as a core on a foot (…)" */
+function startText({ names, parameters }: CandidateFit): string {
+  const share = parameters[names.indexOf("foot_share")]!;
+  const wide = Math.sqrt(parameters[names.indexOf("foot_ratio")]!).toPrecision(2);
+  return share < 1
+    ? `the spot is no Gaussian from the first frames on but a core on a foot ${wide} times as wide that holds ${(100 * share).toPrecision(2)} % of it`
+    : "the spot is no Gaussian from the first frames on: its top is flat";
 }
 
 /** The suspicions that the whole-stack fit bears out. */
@@ -177,6 +191,7 @@ function because(fit: CandidateFit): string {
     case "repulsion":
       return `excitons push each other apart (u₀n₀/k_BT = ${quoted(fit, "repulsion")} at the centre right after the pulse)`;
     case "diffusion":
+      if (hasFoot(fit)) return startText(fit);
       return "one Gaussian is no summary of a frame here, for instance because excitons of earlier pulses lie under the new ones";
   }
 }

@@ -19,7 +19,8 @@ import type { Acquisition } from "../stack/acquisition.ts";
 import type { Stack } from "../stack/stack.ts";
 import { meanDiffusion } from "../transport/line.ts";
 import { perAxis } from "../transport/width.ts";
-import { halves } from "./evidence.ts";
+import { firstShape, halves } from "./evidence.ts";
+import { standsOnFoot, withFoot } from "./footed-start.ts";
 import { diffusionOf, type Joint } from "./joint.ts";
 import type { Reading } from "./reading.ts";
 
@@ -43,13 +44,11 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const data = stackDataOf(reading);
   const annihilation = reading.decays?.fits.annihilation ?? null;
   const hint = annihilation?.converged ? annihilation.parameters[annihilation.names.indexOf("k_n0")]! : null;
-  const fits = fitCandidates(
-    data,
-    symmetryOf(reading),
-    startOf(reading, joint, data),
-    hint,
-    isDipolar(acquisition) ? repulsionHint(reading) : null,
-  );
+  const symmetry = symmetryOf(reading);
+  const start = startOf(reading, joint, data);
+  const fitAll = (form: Symmetry, from: Values): StackFits | null =>
+    fitCandidates(data, form, from, hint, isDipolar(acquisition) ? repulsionHint(reading) : null);
+  const fits = withFoot(data, symmetry, start, firstShape(reading), fitAll(symmetry, start), fitAll);
   return fits === null ? null : { data, fits };
 }
 
@@ -147,6 +146,7 @@ export function stackDataOf(reading: Reading): StackData {
 function roomFor(reading: Reading): { patches: readonly Patch[]; reachOf: (frame: number) => number } {
   const { stack, frames, models, times, widths, line } = reading;
   const { early } = halves(reading);
+  const ampler = standsOnFoot(firstShape(reading)) ? FOOT : 1;
   const free = Math.max(early.value, meanDiffusion(line).value, 0);
   const start = Math.max(...models.variance(widths[0]!.frame).filter((_, a) => a !== 1));
   const glow = glowOf(reading);
@@ -156,7 +156,9 @@ function roomFor(reading: Reading): { patches: readonly Patch[]; reachOf: (frame
     const squares = glow.map(
       ({ later, weight }) => (spread + 2 * FREER * free * later) * (REACH ** 2 + 2 * Math.log(weight)),
     );
-    return Math.sqrt(Math.max(REACH ** 2 * measured, REACH ** 2 * spread, ...squares)) / frames.pixel;
+    return (
+      (ampler * Math.sqrt(Math.max(REACH ** 2 * measured, REACH ** 2 * spread, ...squares))) / frames.pixel
+    );
   };
   const needed = reachOf(widths.at(-1)!.frame);
   const { rectangle } = frames;
@@ -200,6 +202,9 @@ function backgroundOffsets(patches: readonly Patch[], noise: NoiseLaw): number[]
 
 /** Pixels that a frame's background needs to be told from the others'. */
 const FAR_PIXELS = 200;
+
+/** A foot may be some times as wide as the Gaussian that is read on core and foot together. */
+const FOOT = 1.8;
 
 /** Allowance for free excitons that are faster than the early frames show. */
 const FREER = 1.5;

@@ -1,4 +1,5 @@
 import { type Background, type Flow, flowOf } from "./flow.ts";
+import type { Foot } from "./foot.ts";
 import type { Shape } from "./shape.ts";
 import type { Timeline } from "./timeline.ts";
 
@@ -21,13 +22,13 @@ export function memory(removal: number): number {
  * pulses annihilates in two halves, and the younger carries both of them. So every pulse keeps its own width, and the
  * steady state is a fixed point of ℓ, found by iteration.
  */
-export function steadyFlow(shape: Shape, timeline: Timeline, period: number): Flow {
-  let flow = flowOf(shape, timeline, null);
+export function steadyFlow(shape: Shape, timeline: Timeline, period: number, foot?: Foot): Flow {
+  let flow = flowOf(shape, timeline, null, foot);
   if (timeline.rates.annihilation === 0 && timeline.rates.repulsion === 0) return flow;
   const glows = glowsOf(shape, timeline, period);
   let background = left(flow, glows);
   for (let round = 0; round < MOST_ROUNDS; round++) {
-    flow = flowOf(shape, timeline, background);
+    flow = flowOf(shape, timeline, background, foot);
     const next = left(flow, glows);
     let change = 0;
     background = background.map((before, i) => {

@@ -1,3 +1,4 @@
+import { type Foot, startState } from "./foot.ts";
 import { PushedFlow } from "./pushed-flow.ts";
 import type { Shape } from "./shape.ts";
 import type { Timeline } from "./timeline.ts";
@@ -22,11 +23,11 @@ export type Background = readonly Float64Array[];
  * node, one whole and two half steps combined as (4·two − one)/3 to fourth order. Without annihilation v stays the
  * spreading Gaussian and there is nothing to do; without diffusion the steps are exact. With repulsion see PushedFlow.
  */
-export function flowOf(shape: Shape, timeline: Timeline, background: Background | null): Flow {
+export function flowOf(shape: Shape, timeline: Timeline, background: Background | null, foot?: Foot): Flow {
   const { annihilation, repulsion } = timeline.rates;
   if (repulsion !== 0)
-    return { shape, timeline, coefficients: pushed(shape, timeline, background), background };
-  const states = [shape.start()];
+    return { shape, timeline, coefficients: pushed(shape, timeline, background, foot), background };
+  const states = [startState(shape, foot)];
   for (let i = 1; i < timeline.size; i++) {
     const before = states[i - 1]!;
     states.push(annihilation === 0 ? before : stepped(shape, timeline, background, i - 1, before));
@@ -39,10 +40,15 @@ export function flowOf(shape: Shape, timeline: Timeline, background: Background 
   return { shape, timeline, coefficients, background };
 }
 
-function pushed(shape: Shape, timeline: Timeline, background: Background | null): Float64Array[] {
+function pushed(
+  shape: Shape,
+  timeline: Timeline,
+  background: Background | null,
+  foot: Foot | undefined,
+): Float64Array[] {
   const flow = new PushedFlow(shape, timeline);
   const first = new Float64Array(shape.size);
-  shape.toCoefficients(shape.start(), first);
+  shape.toCoefficients(startState(shape, foot), first);
   const coefficients: Float64Array[] = [first];
   for (let i = 0; i + 1 < timeline.size; i++) {
     const left = background === null ? null : (t: number) => backgroundBetween(timeline, background, i, t);

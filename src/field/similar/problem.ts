@@ -1,4 +1,5 @@
 import type { Covariance } from "../../frame/spot.ts";
+import type { Foot } from "./foot.ts";
 
 /** What a recording's mean light follows from. Lengths in µm, times in ns. */
 export interface SimilarProblem {
@@ -6,6 +7,8 @@ export interface SimilarProblem {
   readonly kind: "map" | "trace";
   /** Σ₀ of the density that a pulse makes, µm². */
   readonly start: Covariance;
+  /** A wider Gaussian under the one of Σ₀; absent for a Gaussian start. */
+  readonly foot?: Foot;
   /** D, µm²/ns. */
   readonly diffusion: Covariance;
   /** τ, ns. */

@@ -1,6 +1,7 @@
 import { nodesOver } from "../quadrature.ts";
 import { memory } from "./earlier-pulses.ts";
 import type { Flow } from "./flow.ts";
+import { onFoot } from "./foot.ts";
 import type { SimilarProblem } from "./problem.ts";
 import { pairsOf } from "./pushed-flow.ts";
 import { flowFor, resolutionOf, shares } from "./similar-light.ts";
@@ -24,8 +25,9 @@ function movingTimeOf(problem: SimilarProblem): number {
   const removal = 1 / problem.lifetime + problem.capture;
   if (problem.annihilation === 0 && problem.repulsion === 0) return 1 / removal;
   // a timeline to the end of life, whatever the frames show
-  const life = { ...problem, delays: [memory(removal)], gate: 0 };
-  const flow = flowFor(life, whitened(life), resolutionOf(life));
+  const alone = { ...problem, delays: [memory(removal)], gate: 0 };
+  const life = alone.foot === undefined ? alone : onFoot(alone, alone.foot);
+  const flow = flowFor(life, whitened(life), resolutionOf(alone));
   const left = shares(flow);
   const pairs = pairShares(flow);
   const { timeline } = flow;

@@ -1,5 +1,6 @@
 import { invertSymmetric, solveSymmetric } from "../../numerics/linear-algebra.ts";
 import { endlessLifetime, holding, isEndless } from "./endless.ts";
+import { keepFoot } from "./keep-foot.ts";
 import type { Name, Values } from "./parameters.ts";
 import { valuesOf } from "./parameters.ts";
 import { deviance, naturalSize, type StackScore, scoreStack } from "./score-stack.ts";
@@ -178,4 +179,5 @@ function keepPossible(data: StackData, names: readonly Name[], from: Float64Arra
     if (name === "k_n0") to[i] = Math.max(to[i]!, -0.3 / tau);
     if (name === "capture") to[i] = Math.max(to[i]!, from[i]! / 5);
   }
+  keepFoot(names, from, to);
 }

@@ -1,6 +1,7 @@
 import { solveSymmetric } from "../../numerics/linear-algebra.ts";
 import { endlessLifetime, holding, isEndless } from "./endless.ts";
 import type { StackOptimum } from "./fit-stack.ts";
+import { keepFoot } from "./keep-foot.ts";
 import type { Name } from "./parameters.ts";
 import { deviance, type StackScore, scoreStack } from "./score-stack.ts";
 import type { StackData } from "./stack-data.ts";
@@ -161,7 +162,7 @@ function step(
   endless: number,
 ): Float64Array {
   const tau = p[names.indexOf("tau")]!;
-  return p.map((value, i) => {
+  const to = p.map((value, i) => {
     const name = names[i]!;
     const unit = RATES[name];
     if (unit !== undefined) {
@@ -177,6 +178,8 @@ function step(
     if (POSITIVE.includes(name)) return value * Math.exp(Math.min(Math.max(share, -1), 1));
     return value + delta[i]!;
   });
+  keepFoot(names, p, to);
+  return to;
 }
 
 /** −2 ln L, or null where no light follows from the parameters. */

@@ -1,4 +1,5 @@
 import type { Covariance } from "../../frame/spot.ts";
+import { type Foot, wideningOf } from "../similar/foot.ts";
 import type { SimilarProblem } from "../similar/problem.ts";
 import type { StackData } from "./stack-data.ts";
 
@@ -22,6 +23,8 @@ export const CANDIDATES: readonly Candidate[] = [
 export interface Symmetry {
   readonly start: "round" | "free";
   readonly diffusion: "isotropic" | "tensor";
+  /** A start of two Gaussians of one centre, for a spot that is visibly none from the first frames on. */
+  readonly footed?: boolean;
 }
 
 export type Name =
@@ -38,6 +41,8 @@ export type Name =
   | "D_yy"
   | "tau"
   | "background"
+  | "foot_share"
+  | "foot_ratio"
   | "repulsion"
   | "k_n0"
   | "capture"
@@ -60,6 +65,8 @@ export const UNITS: Readonly<Record<Name, string>> = {
   D_yy: "µm²/ns",
   tau: "ns",
   background: "photons/pixel",
+  foot_share: "1",
+  foot_ratio: "1",
   repulsion: "1",
   k_n0: "1/ns",
   capture: "1/ns",
@@ -75,6 +82,7 @@ export function namesOf(kind: "map" | "trace", candidate: Candidate, symmetry: S
   if (kind === "map" && symmetry.diffusion === "tensor") names.push("D_xx", "D_xy", "D_yy");
   else names.push("D");
   names.push("tau", "background");
+  if (symmetry.footed === true) names.push("foot_share", "foot_ratio");
   if (candidate.repulsion) names.push("repulsion");
   if (candidate.annihilation) names.push("k_n0");
   if (candidate.capture) names.push("capture", "trap_lifetime");
@@ -87,9 +95,10 @@ const TRAP_LIGHT = 1;
 export function problemOf(data: StackData, v: Values): SimilarProblem {
   const start: Covariance = v.s === undefined ? [v.s_xx!, v.s_xy!, v.s_yy!] : [v.s, 0, v.s];
   const diffusion: Covariance = v.D === undefined ? [v.D_xx!, v.D_xy!, v.D_yy!] : [v.D, 0, v.D];
+  const foot = v.foot_share === undefined ? undefined : { share: v.foot_share, ratio: v.foot_ratio! };
   return {
     kind: data.kind,
-    start,
+    ...(foot === undefined ? { start } : { start: narrowed(start, foot), foot }),
     diffusion,
     lifetime: v.tau!,
     repulsion: v.repulsion ?? 0,
@@ -105,6 +114,12 @@ export function problemOf(data: StackData, v: Values): SimilarProblem {
     period: data.period,
     slit: data.slit,
   };
+}
+
+/** Σ₀ stands for the whole start. */
+function narrowed([xx, xy, yy]: Covariance, foot: Foot): Covariance {
+  const by = 1 / wideningOf(foot);
+  return [by * xx, by * xy, by * yy];
 }
 
 export function valuesOf(names: readonly Name[], p: ArrayLike<number>): Values {

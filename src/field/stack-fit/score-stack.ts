@@ -57,6 +57,10 @@ export function naturalSize(name: Name, v: Values): number {
       return variance / v.tau!;
     case "repulsion":
       return 1;
+    case "foot_share":
+      return 0.3;
+    case "foot_ratio":
+      return v.foot_ratio!;
     case "k_n0":
     case "capture":
       return 1 / v.tau!;
