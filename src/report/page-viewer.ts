@@ -29,7 +29,7 @@ ${controls(data)}
 <div class="maps frame-maps">
 ${screen("map", "Recorded", ramp("light", "photons per pixel"))}
 ${screen("model", `<span id="model-name">Model</span>`, `<p class="soft" id="scale-bar"></p>`)}
-${screen("residual", "Residual", `<div class="ramp"><span>−4</span><canvas id="residual-bar" aria-hidden="true"></canvas><span>4</span><span>standard deviations</span></div>`)}
+${screen("residual", "Residual", `<div class="ramp"><span>−4</span><canvas id="residual-bar" aria-hidden="true"></canvas><span>4</span><span>standard deviations; orange: more light than the model</span></div>`)}
 </div>
 <div class="beside">
 ${cut("cut-x", data.kind === "map" ? "Cut along x, mean of a ±σ strip, photons per pixel" : "This frame's line, photons per pixel")}

@@ -38,6 +38,8 @@ export interface ViewerFrame {
   /** N, x, y, Σxx, Σxy, Σyy, B as in a spot; null without one. */
   readonly spot: readonly number[] | null;
   readonly used: boolean;
+  /** Pixels that the fits left out as hot, dead or struck. */
+  readonly struck: number;
   readonly flags: string;
   readonly numbers: readonly (readonly [label: string, text: string])[];
 }
@@ -157,6 +159,7 @@ function describeFrame(row: FrameRow, spot: Spot | null, total: number): ViewerF
     spot:
       spot === null ? null : [spot.photons, ...spot.centre, ...spot.covariance, spot.background].map(short),
     used: row.used,
+    struck: row.hot_pixels,
     flags: row.flags.map((flag) => FLAG[flag]).join(", "),
     numbers,
   };

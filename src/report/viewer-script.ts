@@ -208,7 +208,8 @@ export async function frameViewer(tools: Tools): Promise<void> {
     const sums = tools.inGroups(places, isTrace ? 24 : 3).map((members) => {
       const compared = members.flatMap((place): Compared[] => {
         const model = modelled(place);
-        return model === null ? [] : [{ light: recorded(place), model }];
+        const struck = data.frames[place]?.struck ?? 0;
+        return model === null ? [] : [{ light: recorded(place), model, struck }];
       });
       return { members, ...tools.residualSum(compared, data, group) };
     });

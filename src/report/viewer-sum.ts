@@ -4,6 +4,8 @@ import type { ViewerData } from "./viewer-data.ts";
 export interface Compared {
   readonly light: Float64Array;
   readonly model: Float64Array;
+  /** Pixels that the fits left out as hot, dead or struck. */
+  readonly struck: number;
 }
 
 /** Residuals added up, in standard deviations. */
@@ -18,8 +20,9 @@ export interface ResidualSum {
 /**
  * What a model leaves over in several frames together: Σ(recorded − model) / √Σ variance over the frames and over
  * squares of `group` × `group` cells (on a trace, `group` cells along the line). Where the model is right each sum is a
- * draw of mean 0 and standard deviation 1, so that what is common to the frames stands out and chance does not. Its
- * text is put into the page, so it must hold everything it needs.
+ * draw of mean 0 and standard deviation 1, so that what is common to the frames stands out and chance does not. Of a
+ * frame with struck pixels as many cells, those that lie farthest off, are left out here, too. Its text is put into the
+ * page, so it must hold everything it needs.
  */
 export function residualSum(
   frames: readonly Compared[],
@@ -32,13 +35,16 @@ export function residualSum(
   const rows = Math.ceil(region.rows / group);
   const sums = new Float64Array(columns * rows);
   const variances = new Float64Array(columns * rows);
-  for (const { light, model } of frames) {
+  const variance = (expected: number) => excessNoise * Math.max(0, expected) + dark;
+  for (const { light, model, struck } of frames) {
+    const out = farthestOff(light, model, struck);
     for (let k = 0; k < light.length; k++) {
+      if (out.has(k)) continue;
       const row = Math.floor(Math.floor(k / region.columns) / group);
       const at = row * columns + Math.floor((k % region.columns) / group);
       const expected = model[k] ?? 0;
       sums[at] = (sums[at] ?? 0) + (light[k] ?? 0) - expected;
-      variances[at] = (variances[at] ?? 0) + excessNoise * Math.max(0, expected) + dark;
+      variances[at] = (variances[at] ?? 0) + variance(expected);
     }
   }
   const cells = sums.map((sum, at) => sum / Math.sqrt(Math.max(1e-6, variances[at] ?? 0)));
@@ -46,6 +52,17 @@ export function residualSum(
   const bright = cells.filter((_, at) => (variances[at] ?? 0) >= 5);
   const square = bright.reduce((sum, value) => sum + value * value, 0);
   return { columns, rows, cells, rms: bright.length === 0 ? null : Math.sqrt(square / bright.length) };
+
+  /** At most `count` cells that stand out as the fits ask of a struck pixel: by 5.5 deviations and 5 photons. */
+  function farthestOff(light: Float64Array, model: Float64Array, count: number): Set<number> {
+    if (count === 0) return new Set();
+    const excess = Array.from(light, (value, k) => {
+      const expected = model[k] ?? 0;
+      return Math.abs(value - expected) - 5.5 * Math.sqrt(variance(expected)) - 5 * excessNoise;
+    });
+    const far = [...excess.keys()].filter((k) => (excess[k] ?? 0) > 0);
+    return new Set(far.sort((a, b) => (excess[b] ?? 0) - (excess[a] ?? 0)).slice(0, count));
+  }
 }
 
 /** Consecutive groups of nearly equal size, at most `count` of them. Its text is put into the page, too. */

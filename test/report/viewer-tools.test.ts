@@ -64,7 +64,7 @@ describe("residualSum", () => {
   const flat = (value: number) => new Float64Array(15).fill(value);
 
   it("adds frames and cells: n cells that are d too bright give n·d / √(n·variance)", () => {
-    const frames = [0, 1, 2].map(() => ({ light: flat(11), model: flat(10) }));
+    const frames = [0, 1, 2].map(() => ({ light: flat(11), model: flat(10), struck: 0 }));
     const { columns, rows, cells } = residualSum(frames, small, 2);
     expect([columns, rows]).toEqual([3, 2]);
     const variance = 2 * 10 + 0.25;
@@ -85,14 +85,26 @@ describe("residualSum", () => {
     const frames = [0, 1, 2, 3].map(() => ({
       light: Float64Array.from({ length: 3600 }, () => draw()),
       model: new Float64Array(3600).fill(6),
+      struck: 0,
     }));
     const { rms } = residualSum(frames, counting, 2);
     expect(Math.abs((rms ?? 0) - 1)).toBeLessThan(4 / Math.sqrt(2 * 900));
   });
 
+  it("leaves out as many struck cells as the fits did, and no cell that does not stand out as they do", () => {
+    const struck = flat(10);
+    struck[7] = 900;
+    const of = (count: number) => residualSum([{ light: struck, model: flat(10), struck: count }], small, 1);
+    expect(of(1).cells[7]).toBe(0);
+    // 5.5 √20.25 + 5 · 2 photons is what the fits ask for
+    expect(of(0).cells[7]).toBeCloseTo(890 / Math.sqrt(20.25), 12);
+    struck[7] = 10 + 5.5 * Math.sqrt(20.25) + 9.9;
+    expect(of(1).cells[7]).toBeGreaterThan(5.5);
+  });
+
   it("claims no rms where light is too dim to say", () => {
     const dark = { ...small, excessNoise: 1, darkVariance: 0 };
-    expect(residualSum([{ light: flat(0), model: flat(0.1) }], dark, 2).rms).toBe(null);
+    expect(residualSum([{ light: flat(0), model: flat(0.1), struck: 0 }], dark, 2).rms).toBe(null);
     expect(residualSum([], dark, 2).rms).toBe(null);
   });
 });
@@ -197,7 +209,7 @@ describe("the text of each function", () => {
     expect([...alone(modelCells)(spot, map)]).toEqual([...modelCells(spot, map)]);
     expect([...alone(colourRamps)().light]).toEqual([...colourRamps().light]);
     expect([...alone(residualCells)(Float64Array.of(12), Float64Array.of(4), map)]).toEqual([8 / 3]);
-    const compared = [{ light: Float64Array.of(12), model: Float64Array.of(4) }];
+    const compared = [{ light: Float64Array.of(900), model: Float64Array.of(4), struck: 0 }];
     expect(alone(residualSum)(compared, map, 2).cells[0]).toBe(residualSum(compared, map, 2).cells[0]);
     expect(alone(inGroups)([1, 2], 2)).toEqual([[1], [2]]);
     expect(alone(overlayShapes)(spot, map, 1)).toEqual(overlayShapes(spot, map, 1));
