@@ -121,6 +121,8 @@ const NAMES: Readonly<Record<string, string>> = {
   s_xx: "first width along x",
   s_xy: "first tilt",
   s_yy: "first width along y",
+  foot_share: "share of the foot",
+  foot_ratio: "width of the foot",
   D_xx: "D along x",
   D_xy: "D_xy",
   D_yy: "D along y",
@@ -129,6 +131,8 @@ const NAMES: Readonly<Record<string, string>> = {
   k_n0: "k·n₀",
   capture: "c",
   trap_lifetime: "τ of traps",
+  foot_share: "share of the foot",
+  foot_ratio: "width of the foot",
 };
 
 function remarks(field: Field): string[] {
@@ -136,6 +140,7 @@ function remarks(field: Field): string[] {
     return `${NAMES[a] ?? a} and ${NAMES[b] ?? b} (r = ${r.toFixed(2).replace("-", "−")})`;
   });
   return [
+    ...startRemark(field),
     ...(field.capture === null
       ? []
       : ["Trapped excitons are taken to shine like free ones: τ and c rest on that, D and L do not."]),
@@ -145,4 +150,17 @@ function remarks(field: Field): string[] {
           `Strongly correlated, so that an error in one goes with an error in the other: ${pairs.join(", ")}.`,
         ]),
   ];
+}
+
+/** What the spot starts as, where that is no Gaussian. */
+function startRemark({ candidates, preferred }: Field): string[] {
+  const { foot_share: share, foot_ratio: ratio } =
+    candidates.find(({ name }) => name === preferred)?.parameters ?? {};
+  if (share === undefined || ratio === undefined) return [];
+  // ratio is of variances; more than all in the wide Gaussian leaves a dip for the narrow one
+  return share.value > 1
+    ? ["The spot starts with a flat top: all candidates begin with a wide Gaussian less a narrow one."]
+    : [
+        `The spot starts as a core on a foot: all candidates begin with two Gaussians, of which the wider, ${plain(Math.sqrt(ratio.value), 2)} times as wide, holds ${plain(100 * share.value, 2)} % of the excitons.`,
+      ];
 }

@@ -1,7 +1,7 @@
 import type { Analysis } from "../outcome/analysis.ts";
 import type { Result } from "../outcome/result.ts";
 import { concise, plain, symbols } from "./notation.ts";
-import { fieldUncertaintyText, rangedText } from "./ranged-text.ts";
+import { fieldUncertaintyText, rangedText, startText } from "./ranged-text.ts";
 import {
   baseName,
   CANDIDATE,
@@ -121,6 +121,7 @@ function fieldMethod({ field }: Result): string {
   return (
     `The reaction–diffusion model ∂n/∂t = ∇·D${field.repulsion === null ? "" : "(1 + β n/n₀)"}∇n − n/τ − k n² − c n for free and ∂m/∂t = c n − m/τ_m for trapped excitons was fitted to all pixels of all frames at once by maximum likelihood (damped Fisher scoring), ` +
     `with its terms chosen by corrected Akaike weight and goodness of fit: ${CANDIDATE[field.preferred]} (${found.join(", ")}; χ²/dof = ${(field.chi2 / field.degrees_of_freedom).toFixed(2)} over rings of groups of frames, p ${equalsText(field.p_value)}). ` +
+    startText(field) +
     fieldUncertaintyText(field) +
     (field.adopted
       ? "D, τ and L are from this fit."

@@ -51,3 +51,13 @@ export function fieldUncertaintyText(field: Field): string {
       : `The 95 % interval of ${profiled.map((name) => WORDS[name]).join(", ")} is where −2 ln L, refitted over all other parameters, rises by no more than 3.84${birge > 1 ? " times the square of that factor" : ""} (profile likelihood), because it is far from a parabola there. `;
   return `Uncertainties are those of the inverse Fisher matrix${widened}. ${profiles}`;
 }
+
+/** What the fit starts from, where that is no Gaussian. */
+export function startText({ candidates, preferred }: Field): string {
+  const { foot_share: share, foot_ratio: ratio } =
+    candidates.find(({ name }) => name === preferred)?.parameters ?? {};
+  if (share === undefined || ratio === undefined) return "";
+  const text = ({ value, u }: typeof share): string =>
+    u === null ? plain(value, DIGITS) : concise(value, u);
+  return `The first frames are visibly not Gaussian: the starting density is the sum of two Gaussians of one centre, the wider one with ${text(ratio)} times the variance and ${text(share)} of the excitons${share.value > 1 ? ", the narrower one taken off it" : ""}. `;
+}

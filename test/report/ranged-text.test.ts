@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
 import type { Result } from "../../src/outcome/result.ts";
-import { fieldUncertaintyText, rangedText } from "../../src/report/ranged-text.ts";
+import { fieldUncertaintyText, rangedText, startText } from "../../src/report/ranged-text.ts";
 
 type Field = NonNullable<Result["field"]>;
 const of = (
@@ -58,5 +58,26 @@ describe("fieldUncertaintyText", () => {
 
   it("says that there are none where the data do not determine the fit", () => {
     expect(fieldUncertaintyText({ ...field, D: of(null, [null, null]) })).toContain("no uncertainties");
+  });
+});
+
+describe("startText", () => {
+  const starting = (parameters: Record<string, { value: number; u: number | null; unit: string }>): Field =>
+    ({ preferred: "diffusion", candidates: [{ name: "diffusion", parameters }] }) as unknown as Field;
+
+  it("describes a start of two Gaussians, and says nothing of one", () => {
+    expect(startText(starting({}))).toBe("");
+    const text = startText(
+      starting({
+        foot_share: { value: 0.1, u: 0.002, unit: "1" },
+        foot_ratio: { value: 9, u: null, unit: "1" },
+      }),
+    );
+    expect(text).toContain("the wider one with 9 times the variance and 0.1000(20) of the excitons. ");
+    const flat = starting({
+      foot_share: { value: 1.3, u: 0.02, unit: "1" },
+      foot_ratio: { value: 2, u: 0.1, unit: "1" },
+    });
+    expect(startText(flat)).toContain("the narrower one taken off it");
   });
 });
