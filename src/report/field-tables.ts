@@ -121,8 +121,6 @@ const NAMES: Readonly<Record<string, string>> = {
   s_xx: "first width along x",
   s_xy: "first tilt",
   s_yy: "first width along y",
-  foot_share: "share of the foot",
-  foot_ratio: "width of the foot",
   D_xx: "D along x",
   D_xy: "D_xy",
   D_yy: "D along y",

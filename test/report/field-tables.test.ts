@@ -113,6 +113,21 @@ describe("the preferred candidate's parameters", () => {
     expect(rows).toContainEqual(["lifetime in traps", "90 ns", "> 41.2"]);
   });
 
+  it("say what the spot starts as where that is no Gaussian: 2.25 times the variance is 1.5 times as wide", () => {
+    const start = (share: number) => {
+      const { candidates } = makeField();
+      const extra = {
+        foot_share: { value: share, u: 0.01, unit: "1" },
+        foot_ratio: { value: 2.25, u: 0.1, unit: "1" },
+      };
+      const footed = candidates.map((each) => ({ ...each, parameters: { ...each.parameters, ...extra } }));
+      return pageOf(candidateTables(resultWith({ candidates: footed }))).body.textContent;
+    };
+    expect(start(0.291)).toContain("the wider, 1.5 times as wide, holds 29 % of the excitons");
+    expect(start(1.3)).toContain("starts with a flat top");
+    expect(pageOf(candidateTables(resultWith())).body.textContent).not.toContain("starts");
+  });
+
   it("name strong correlations by what the tables call the parameters", () => {
     const text = pageOf(candidateTables(resultWith())).body.textContent;
     expect(text).toContain("light and k·n₀ (r = 0.87), τ and k·n₀ (r = −0.81)");
