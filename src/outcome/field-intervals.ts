@@ -18,6 +18,9 @@ export interface Range {
 
 /** 95 % of χ² with one degree of freedom. */
 const LEVEL = 3.841458820694124;
+const HALF = Math.sqrt(LEVEL);
+/** Where all are known to this part of themselves, the likelihood is normal: it bends by some u/value over its width. */
+const SHARP = 0.01;
 /** How far −2 ln L at the ends of value ± 1.96 u may be from a normal likelihood's, relatively. */
 const NORMAL = 0.1;
 /** Nothing is looked for beyond this: rates in units of 1/τ or of one over the recording's length, and lifetimes. */
@@ -25,7 +28,8 @@ const ENDLESS = 100;
 
 /**
  * The 95 % intervals of the preferred fit: value ± 1.96 u where −2 ln L at both ends is a normal likelihood's within 10 %
- * along the line on which that one has its least rise; else by the profile of the likelihood (see `profileInterval`).
+ * along the line on which that one has its least rise, or where all are known so well that it must be; else by the profile
+ * of the likelihood (see `profileInterval`).
  *
  * @param birge factor on u; its square is the factor on the level
  */
@@ -36,10 +40,19 @@ export function fieldIntervals(
 ): ReadonlyMap<Ranged, Range> {
   const found = new Map<Ranged, Range>();
   if (!fit.converged) return found;
-  for (const name of RANGED) {
+  const held = RANGED.flatMap((name) => {
     const gradient = gradientOf(fit.names, name, fit.parameters);
-    if (gradient.some((g) => g !== 0))
-      found.set(name, rangeOf(name, heldFit(data, fit, gradient), data, fit, birge));
+    return gradient.every((g) => g === 0) ? [] : [{ name, of: heldFit(data, fit, gradient) }];
+  });
+  const sharp = held.every(({ of: { value, u } }) => birge * u < SHARP * Math.abs(value));
+  for (const { name, of } of held) {
+    const half = HALF * birge * of.u;
+    found.set(
+      name,
+      sharp
+        ? { ends: [of.value - half, of.value + half], profiled: false }
+        : rangeOf(name, of, data, fit, birge),
+    );
   }
   return found;
 }
@@ -53,7 +66,7 @@ function rangeOf(name: Ranged, held: HeldFit, data: StackData, fit: CandidateFit
   const u = birge * held.u;
   const level = LEVEL * birge ** 2;
   const [lowest, highest] = limitsOf(name, data, fit);
-  const half = Math.sqrt(LEVEL) * u;
+  const half = HALF * u;
   const [low, high] = [held.value - half, held.value + half];
   const normal = (x: number): boolean => {
     const rise = held.riseAlong(x);
