@@ -1,5 +1,4 @@
-import type { StackFits } from "../field/stack-fit/candidates.ts";
-import { fitStack } from "../field/stack-fit/fit-stack.ts";
+import { type StackFits, tryFit } from "../field/stack-fit/candidates.ts";
 import { CANDIDATES, namesOf, type Symmetry, type Values } from "../field/stack-fit/parameters.ts";
 import type { StackData } from "../field/stack-fit/stack-data.ts";
 import { correctedAkaike } from "../numerics/model-choice.ts";
@@ -11,38 +10,47 @@ const VISIBLY = 4;
 /** How much lower in corrected Akaike units a start with a foot must lie for each of its two parameters, as a candidate. */
 const PRICE = 4;
 
+/** Fits of all candidates with what they were fitted to; null where none could be fitted. */
+interface Fitted {
+  readonly data: StackData;
+  readonly fits: StackFits | null;
+}
+
+/** Fits all candidates from a start of the given form. */
+type FitAll = (data: StackData, symmetry: Symmetry, start: Values) => StackFits | null;
+
 /**
  * Fits of a whole stack whose start is visibly no Gaussian from the first frames on: all candidates once more with two
  * Gaussians of one centre as the start, where plain diffusion from there is better than the best from a Gaussian, or
  * that one does not describe the recording. A core on a foot from the beginning is no work of traps, and a flat top
  * none of annihilation.
  *
- * @param plain the candidates from a Gaussian start
+ * @param gaussian the fits from a Gaussian start
  * @param shape q of the first frames, see `shapeScore`
- * @param fitAll fits all candidates
- * @returns `plain` where it is as good
+ * @param ampleData the recording with more pixels around the spot: a foot is wider than what is read as its width
+ * @returns `gaussian` where that is as good
  */
 export function withFoot(
-  data: StackData,
+  gaussian: Fitted,
   symmetry: Symmetry,
   start: Values,
   shape: Sign,
-  plain: StackFits | null,
-  fitAll: (symmetry: Symmetry, start: Values) => StackFits | null,
-): StackFits | null {
-  if (Math.abs(shape.value) < VISIBLY * shape.u) return plain;
+  ampleData: () => StackData,
+  fitAll: FitAll,
+): Fitted {
+  if (Math.abs(shape.value) < VISIBLY * shape.u) return gaussian;
   const footed = { ...symmetry, footed: true };
   const from = { ...start, ...footOf(shape.value) };
-  if (plain !== null && describes(plain.preferred) && !isBetter(data, footed, from, plain)) return plain;
-  const fits = fitAll(footed, from);
-  if (fits === null || !fits.preferred.converged) return plain;
-  if (plain === null || !plain.preferred.converged) return fits;
-  return fits.preferred.aicc < plain.preferred.aicc - 2 * PRICE ? fits : plain;
-}
-
-/** Whether the first frames visibly show a core on a foot. */
-export function standsOnFoot({ value, u }: Sign): boolean {
-  return value >= VISIBLY * u;
+  const { fits: before } = gaussian;
+  if (before !== null && describes(before.preferred) && !isBetter(gaussian.data, footed, from, before)) {
+    return gaussian;
+  }
+  const data = shape.value > 0 ? ampleData() : gaussian.data;
+  const fits = fitAll(data, footed, from);
+  if (fits?.preferred.converged !== true) return gaussian;
+  const rival = data === gaussian.data ? before : fitAll(data, symmetry, start);
+  if (rival?.preferred.converged !== true) return { data, fits };
+  return fits.preferred.aicc < rival.preferred.aicc - 2 * PRICE ? { data, fits } : gaussian;
 }
 
 function footOf(shape: number): Values {
@@ -51,7 +59,10 @@ function footOf(shape: number): Values {
 
 function isBetter(data: StackData, symmetry: Symmetry, start: Values, { preferred }: StackFits): boolean {
   const names = namesOf(data.kind, CANDIDATES[0]!, symmetry);
-  const fit = fitStack(data, names, start);
+  const fit = tryFit(data, names, start, preferred.deviance);
   const pixels = data.frames.reduce((sum, { patch }) => sum + patch.data.length, 0);
-  return fit.converged && correctedAkaike(fit.deviance, names.length, pixels) < preferred.aicc - 2 * PRICE;
+  return (
+    fit?.converged === true &&
+    correctedAkaike(fit.deviance, names.length, pixels) < preferred.aicc - 2 * PRICE
+  );
 }

@@ -20,7 +20,7 @@ import type { Stack } from "../stack/stack.ts";
 import { meanDiffusion } from "../transport/line.ts";
 import { perAxis } from "../transport/width.ts";
 import { firstShape, halves } from "./evidence.ts";
-import { standsOnFoot, withFoot } from "./footed-start.ts";
+import { withFoot } from "./footed-start.ts";
 import { diffusionOf, type Joint } from "./joint.ts";
 import type { Reading } from "./reading.ts";
 
@@ -46,10 +46,12 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const hint = annihilation?.converged ? annihilation.parameters[annihilation.names.indexOf("k_n0")]! : null;
   const symmetry = symmetryOf(reading);
   const start = startOf(reading, joint, data);
-  const fitAll = (form: Symmetry, from: Values): StackFits | null =>
-    fitCandidates(data, form, from, hint, isDipolar(acquisition) ? repulsionHint(reading) : null);
-  const fits = withFoot(data, symmetry, start, firstShape(reading), fitAll(symmetry, start), fitAll);
-  return fits === null ? null : { data, fits };
+  const fitAll = (to: StackData, form: Symmetry, from: Values): StackFits | null =>
+    fitCandidates(to, form, from, hint, isDipolar(acquisition) ? repulsionHint(reading) : null);
+  const gaussian = { data, fits: fitAll(data, symmetry, start) };
+  const ample = (): StackData => stackDataOf(reading, FOOT);
+  const { fits, data: used } = withFoot(gaussian, symmetry, start, firstShape(reading), ample, fitAll);
+  return fits === null ? null : { data: used, fits };
 }
 
 /** Whether the acquisition tells of excitons that are apart from their holes in another layer, and so repel each other. */
@@ -91,15 +93,19 @@ export function wholeLightOf(
   };
 }
 
-/** The frames that a model of the light must describe: all but those set aside for what they are. */
-export function stackDataOf(reading: Reading): StackData {
+/**
+ * The frames that a model of the light must describe: all but those set aside for what they are.
+ *
+ * @param room times as far around the spot as its width asks for
+ */
+export function stackDataOf(reading: Reading, room = 1): StackData {
   const { stack, frames, flags, models } = reading;
   const { acquisition } = stack;
   const { kind, pixel } = frames;
   const modelledBefore = acquisition.period !== null || acquisition.response !== null;
   const first = reading.widths[0]!.frame;
   const centre = models.centre(first);
-  const { patches, reachOf } = roomFor(reading);
+  const { patches, reachOf } = roomFor(reading, room);
   const offsets = backgroundOffsets(patches, frames.noise);
   const used: StackFrame[] = [];
   for (const [i, list] of flags.entries()) {
@@ -143,10 +149,12 @@ export function stackDataOf(reading: Reading): StackData {
  * the free ones still spread as the early frames do, and their light must not be taken for background; nor that of earlier
  * pulses, weaker the older it is but wider: e^(−r²/2σ²) of it counts as far as e^(−REACH²/2) does of the newest.
  */
-function roomFor(reading: Reading): { patches: readonly Patch[]; reachOf: (frame: number) => number } {
+function roomFor(
+  reading: Reading,
+  room: number,
+): { patches: readonly Patch[]; reachOf: (frame: number) => number } {
   const { stack, frames, models, times, widths, line } = reading;
   const { early } = halves(reading);
-  const ampler = standsOnFoot(firstShape(reading)) ? FOOT : 1;
   const free = Math.max(early.value, meanDiffusion(line).value, 0);
   const start = Math.max(...models.variance(widths[0]!.frame).filter((_, a) => a !== 1));
   const glow = glowOf(reading);
@@ -157,7 +165,7 @@ function roomFor(reading: Reading): { patches: readonly Patch[]; reachOf: (frame
       ({ later, weight }) => (spread + 2 * FREER * free * later) * (REACH ** 2 + 2 * Math.log(weight)),
     );
     return (
-      (ampler * Math.sqrt(Math.max(REACH ** 2 * measured, REACH ** 2 * spread, ...squares))) / frames.pixel
+      (room * Math.sqrt(Math.max(REACH ** 2 * measured, REACH ** 2 * spread, ...squares))) / frames.pixel
     );
   };
   const needed = reachOf(widths.at(-1)!.frame);

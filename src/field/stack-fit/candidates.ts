@@ -106,7 +106,12 @@ function toBeat({ capture }: Candidate, found: readonly Omit<CandidateFit, "weig
 }
 
 /** Null where no light follows from the start or from where the fit is led: that candidate is no candidate. */
-function tryFit(data: StackData, names: readonly Name[], start: Values, toBeat: number): StackOptimum | null {
+export function tryFit(
+  data: StackData,
+  names: readonly Name[],
+  start: Values,
+  toBeat: number,
+): StackOptimum | null {
   try {
     return fitStack(data, names, start, toBeat);
   } catch (error) {
