@@ -12,7 +12,7 @@ const RANGED: readonly Ranged[] = ["D", "tau", "repulsion", "k_n0", "capture", "
 export interface Range {
   /** 95 %; null for an end that the data do not set. */
   readonly ends: Interval;
-  /** Whether the likelihood is so far from normal that the interval is its profile's. */
+  /** Whether the interval is the likelihood's profile and not value ± 1.96 u. */
   readonly profiled: boolean;
 }
 
@@ -23,6 +23,8 @@ const HALF = Math.sqrt(LEVEL);
 const SHARP = 0.01;
 /** How far −2 ln L at the ends of value ± 1.96 u may be from a normal likelihood's, relatively. */
 const NORMAL = 0.1;
+/** A profile's interval this near value ± 1.96 u, relatively to 1.96 u, is the same. */
+const SAME = 0.05;
 /** Nothing is looked for beyond this: rates in units of 1/τ or of one over the recording's length, and lifetimes. */
 const ENDLESS = 100;
 
@@ -79,10 +81,10 @@ function rangeOf(name: Ranged, held: HeldFit, data: StackData, fit: CandidateFit
     return { ends: [low > lowest ? low : null, high < highest ? high : null], profiled: false };
   }
   const { value, rise } = held;
-  return {
-    ends: profileInterval({ value, u, lowest, highest, scale: lifetime ? "rate" : "value", rise }, level),
-    profiled: true,
-  };
+  const scale = lifetime ? "rate" : "value";
+  const ends = profileInterval({ value, u, lowest, highest, scale, rise }, level);
+  const near = (end: number | null, x: number): boolean => end !== null && Math.abs(end - x) < SAME * half;
+  return { ends, profiled: !(near(ends[0], low) && near(ends[1], high)) };
 }
 
 /** What the quantity can be at all; D may come out negative and a rate may not. */

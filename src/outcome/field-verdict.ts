@@ -57,7 +57,7 @@ export function judgeField(
     const kept = plain.reasons
       .filter(({ code }) => !ANSWERED.includes(code))
       .map((each): Reason => (each.code === "earlier-pulses-glow" ? { ...each, level: "note" } : each));
-    return levelOf([wouldMislead(preferred, line), ...confirmed(preferred), ...kept, ...open]);
+    return levelOf([wouldMislead(preferred, line, d), ...confirmed(preferred), ...kept, ...open]);
   }
   if (!describes(preferred)) {
     return levelOf([
@@ -111,12 +111,24 @@ export function repulsionNotTested(verdict: Result["verdict"], { sample }: Acqui
   ]);
 }
 
-function wouldMislead(fit: CandidateFit, line: Quantities["quantities"]["diffusion_coefficient"]): Reason {
+/** Two answers within this many standard uncertainties of each other do not contradict. */
+const AGREES = 3;
+
+function wouldMislead(
+  fit: CandidateFit,
+  line: Quantities["quantities"]["diffusion_coefficient"],
+  d: { value: number; u: number },
+): Reason {
   const claimed = `${line.value.toPrecision(3)} ± ${line.u.toPrecision(1)} cm²/s`;
+  const agrees = Math.abs(d.value - line.value) < AGREES * Math.hypot(d.u, line.u);
+  const because = [
+    whyNot(fit),
+    ...(fit.candidate.name !== "diffusion" && hasFoot(fit) ? [startText(fit)] : []),
+  ].join(", and ");
   return reason(
     "caution",
     "widths-would-mislead",
-    `the widths alone would have claimed D = ${claimed}, which is wrong because ${because(fit)}${fit.candidate.name !== "diffusion" && hasFoot(fit) ? `, and ${startText(fit)}` : ""}; the numbers come from the fit of the whole stack, which describes it`,
+    `the widths alone would have claimed D = ${claimed}, which is ${agrees ? "near here but nothing to rely on" : "wrong"} because ${because}; the numbers come from the fit of the whole stack, which describes it`,
     "quote them with the model and its parameters, and confirm by a recording at another excitation density or temperature",
   );
 }
@@ -180,7 +192,7 @@ function quoted(fit: CandidateFit, name: Name): string {
   return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)}`;
 }
 
-function because(fit: CandidateFit): string {
+function whyNot(fit: CandidateFit): string {
   switch (fit.candidate.name) {
     case "annihilation":
       return `excitons annihilate each other (k·n₀ = ${rate(fit, "k_n0")})`;

@@ -77,9 +77,9 @@ function parameters(field: Field): string {
   const row = (name: string, unit: string, given: Field["D"] | Field["k"]): { cells: string[] }[] => {
     if (given === null) return [];
     const { value, u } = given;
-    const number = u === null ? plain(value, 3) : concise(value, u);
+    const number = u === null ? "not determined" : `${concise(value, u)} ${unit}`.trimEnd();
     const ends = "interval95" in given ? given.interval95 : normalEnds(value, u);
-    return [{ cells: [name, e(`${number} ${unit}`.trimEnd()), e(intervalText(ends, u))] }];
+    return [{ cells: [name, e(number), e(intervalText(ends, u))] }];
   };
   const rows = [
     ...row("diffusion coefficient D", "cm²/s", field.D),
