@@ -4,7 +4,8 @@
     python3 scripts/make-reference-stacks.py
 
 writes test/data/scipy/spot-fits.json (Poisson maximum-likelihood fits of small frames) and
-test/data/scipy/reaction-diffusion.json (densities with annihilation and capture). Seeded; run once, kept as data.
+test/data/scipy/reaction-diffusion.json (densities with annihilation and capture) and test/data/scipy/repulsion.json
+(densities with repulsion). Seeded; run once, kept as data.
 """
 
 import json
@@ -155,9 +156,33 @@ def ring_solution(case, times, cells):
     return rows
 
 
-def rings(case, times):
-    coarse, fine = ring_solution(case, times, 240), ring_solution(case, times, 480)
-    finest = ring_solution(case, times, 960)
+def pushed_rings(case, times, cells):
+    """∂n/∂t = ∇·D(1 + b n)∇n − n/τ − k n² on rings of equal width: the flux is −D times the slope of n + ½b n²."""
+    sigma2, d, tau, k, b = (case[key] for key in ("sigma2", "d", "tau", "k", "b"))
+    # a round Gaussian's variance grows at most by 2D(1 + b n₀/4) per time
+    reach = 7.5 * np.sqrt(sigma2 + 2 * d * (1 + b / (8 * np.pi * sigma2)) * times[-1])
+    h = reach / cells
+    edge = h * np.arange(cells + 1)
+    area = np.pi * (edge[1:] ** 2 - edge[:-1] ** 2)
+    ring = np.exp(-0.5 * edge**2 / sigma2)
+
+    def slope(_, n):
+        pressure = n + 0.5 * b * n * n
+        flux = np.zeros(cells + 1)
+        flux[1:-1] = -d * (pressure[1:] - pressure[:-1]) / h * 2 * np.pi * edge[1:-1]
+        return (flux[:-1] - flux[1:]) / area - n / tau - k * n * n
+
+    s = solve_ivp(slope, (0, times[-1]), (ring[:-1] - ring[1:]) / area, "LSODA", times, rtol=1e-11, atol=1e-14, lband=1, uband=1)
+    middle2 = 0.5 * (edge[1:] ** 2 + edge[:-1] ** 2)
+    return [
+        {"free": np.sum(n * area), "free_variance": 0.5 * np.sum(n * area * middle2) / np.sum(n * area), "free_centre": (5 * n[0] - n[1]) / 4}
+        for n in s.y.T
+    ]
+
+
+def rings(case, times, solution=ring_solution):
+    coarse, fine = solution(case, times, 240), solution(case, times, 480)
+    finest = solution(case, times, 960)
     out = []
     for a, b, c in zip(coarse, fine, finest):
         first = {key: (4 * b[key] - a[key]) / 3 for key in a}
@@ -239,7 +264,26 @@ def densities():
     }
 
 
+def pushed_densities():
+    times = [0.5, 2.0, 6.0]
+    peak = 1 / (2 * np.pi * 0.1)
+    cases = [
+        {"name": "b n0 = 0.3", "sigma2": 0.1, "d": 0.02, "tau": 6.0, "k": 0.0, "b": 0.3 / peak},
+        {"name": "b n0 = 2", "sigma2": 0.1, "d": 0.02, "tau": 6.0, "k": 0.0, "b": 2 / peak},
+        {"name": "b n0 = 8", "sigma2": 0.1, "d": 0.01, "tau": 6.0, "k": 0.0, "b": 8 / peak},
+        {"name": "b n0 = 1, k n0 tau = 3", "sigma2": 0.1, "d": 0.02, "tau": 6.0, "k": 3 / 6 / peak, "b": 1 / peak},
+    ]
+    return {
+        "made_by": "scripts/make-reference-stacks.py: finite volumes on rings (Richardson), scipy.integrate.solve_ivp",
+        "versions": VERSIONS,
+        "units": "um, ns; one exciton at the start",
+        "times": times,
+        "round": [{**case, "rows": rings(case, times, pushed_rings)} for case in cases],
+    }
+
+
 if __name__ == "__main__":
     OUT.mkdir(parents=True, exist_ok=True)
     (OUT / "spot-fits.json").write_text(json.dumps(spot_cases(), separators=(",", ":")) + "\n")
     (OUT / "reaction-diffusion.json").write_text(json.dumps(densities(), indent=1) + "\n")
+    (OUT / "repulsion.json").write_text(json.dumps(pushed_densities(), indent=1) + "\n")

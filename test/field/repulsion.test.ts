@@ -1,3 +1,4 @@
+import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
 import { Evolution } from "../../src/field/evolution.ts";
 import { type Grid, gridFor, moments } from "../../src/field/grid.ts";
@@ -5,9 +6,11 @@ import { type Medium, peakDensity, plainMedium, type Start } from "../../src/fie
 import { pushedTime } from "../../src/field/pushed-spread.ts";
 import { nodesOver } from "../../src/field/quadrature.ts";
 import { readScenario } from "../../src/field/scenario.ts";
+import { similarLight } from "../../src/field/similar/similar-light.ts";
 import { expectation } from "../../src/field/synthesise.ts";
 import { movingTime } from "../../src/field/travel.ts";
 import type { Covariance } from "../../src/frame/spot.ts";
+import { at, picture, moments as pictureMoments, problem, square } from "./similar/problems.ts";
 
 const ROUND: Start = { amount: 1, covariance: [0.1, 0, 0.1] };
 const TURNED: Start = { amount: 1, covariance: [0.1, 0.02, 0.08] };
@@ -169,6 +172,66 @@ describe("Evolution with repulsion", () => {
     const normal = run(6, 3);
     run(7, 6).forEach((fine, i) => {
       expect(Math.abs(normal[i]! / fine - 1)).toBeLessThan(2e-6);
+    });
+  });
+});
+
+interface Reference {
+  readonly times: number[];
+  readonly round: {
+    readonly name: string;
+    readonly sigma2: number;
+    readonly d: number;
+    readonly tau: number;
+    readonly k: number;
+    readonly b: number;
+    readonly rows: { free: number; free_variance: number; free_centre: number }[];
+  }[];
+}
+
+// scripts/make-reference-stacks.py: finite volumes on rings with scipy.integrate.solve_ivp
+const REFERENCE: Reference = JSON.parse(
+  readFileSync(new URL("../data/scipy/repulsion.json", import.meta.url), "utf8"),
+);
+
+describe("repulsion against finite volumes in SciPy", () => {
+  it.each(REFERENCE.round)(
+    "the Fourier solver gives amounts, variances and centre of $name to 1e-5",
+    (one) => {
+      const { sigma2, d, tau, k, b, rows } = one;
+      const start: Start = { amount: 1, covariance: [sigma2, 0, sigma2] };
+      const medium: Medium = { ...plainMedium([d, 0, d], tau), repulsion: b, annihilation: k };
+      const grid = gridUpTo(medium, start, REFERENCE.times.at(-1)!, 7);
+      const evolution = new Evolution(medium, start, grid, 1e-7);
+      rows.forEach((row, i) => {
+        evolution.advance(REFERENCE.times[i]!);
+        const { amount, covariance } = moments(grid, evolution.free);
+        expect(Math.abs(amount / row.free - 1)).toBeLessThan(1e-5);
+        expect(Math.abs(covariance[0] / row.free_variance - 1)).toBeLessThan(1e-5);
+        expect(Math.abs(evolution.free[0]! / row.free_centre - 1)).toBeLessThan(1e-5);
+      });
+    },
+  );
+
+  it.each(REFERENCE.round)("the quick solver gives the same of $name to 5e-5", (one) => {
+    const { sigma2, d, tau, k, b, rows } = one;
+    const peak = 1 / (2 * Math.PI * sigma2);
+    const light = similarLight(
+      problem({
+        start: [sigma2, 0, sigma2],
+        diffusion: [d, 0, d],
+        lifetime: tau,
+        repulsion: b * peak,
+        annihilation: k * peak,
+        delays: REFERENCE.times,
+      }),
+    );
+    const grid = square(5, 0.08);
+    rows.forEach((row, i) => {
+      expect(Math.abs(light.amount(i) / row.free - 1)).toBeLessThan(5e-5);
+      expect(Math.abs(at(light, i, 0, 0) / row.free_centre - 1)).toBeLessThan(5e-5);
+      const { covariance } = pictureMoments(picture(light, i, grid), grid);
+      expect(Math.abs(covariance[0] / row.free_variance - 1)).toBeLessThan(5e-5);
     });
   });
 });
