@@ -6,7 +6,13 @@ const ROAD: Readonly<Record<Forecast["road"], string>> = {
   whole_stack: "from the whole stack at once, as gleamwalk spread --field fits it",
 };
 
-const UNIT: Readonly<Record<string, string>> = { "cm^2/s": "cm²/s", um: "µm", "1/ns": "/ns", ns: "ns" };
+const UNIT: Readonly<Record<string, string>> = {
+  "cm^2/s": "cm²/s",
+  um: "µm",
+  "1/ns": "/ns",
+  ns: "ns",
+  "1": "",
+};
 
 /** The forecast for a person, in lines of at most `width` columns. */
 export function forecastText(told: Forecast, width: number): string {
@@ -31,13 +37,14 @@ function quantityLines({ quantities: q }: Forecast): string[] {
     ["D", q.diffusion_coefficient],
     ["τ", q.lifetime],
     ["L", q.diffusion_length],
+    ["β", q.repulsion],
     [symbols("k_n0"), q.k_n0],
     ["c", q.capture],
     ["τ_m", q.trap_lifetime],
   ];
   return rows.flatMap(([name, one]) => {
     if (one === null) return [];
-    const value = `${concise(one.value, one.u)} ${UNIT[one.unit]}`;
+    const value = `${concise(one.value, one.u)} ${UNIT[one.unit]}`.trimEnd();
     const relative = one.value === 0 ? "" : `${plain((100 * one.u) / Math.abs(one.value), 2)} %`;
     return [`  ${name.padEnd(5)}${value.padEnd(26)}${relative}`.trimEnd()];
   });

@@ -24,6 +24,7 @@ export interface Forecast {
     readonly diffusion_coefficient: ForecastQuantity;
     readonly lifetime: ForecastQuantity;
     readonly diffusion_length: ForecastQuantity;
+    readonly repulsion: ForecastQuantity | null;
     readonly k_n0: ForecastQuantity | null;
     readonly capture: ForecastQuantity | null;
     readonly trap_lifetime: ForecastQuantity | null;
@@ -64,7 +65,7 @@ const COARSE = 0.3;
 
 /**
  * What a recording as planned will tell: the Cramér–Rao bounds from its Fisher information. A plain scenario (one
- * lifetime, no annihilation, traps, slit, response or earlier pulses) is taken by the widths' road, as `spread` takes
+ * lifetime, no repulsion, annihilation, traps, slit, response or earlier pulses) is taken by the widths' road, as `spread` takes
  * it; any other by the whole-stack fit.
  *
  * @throws InputFault where the plan does not determine its quantities
@@ -104,6 +105,7 @@ export function forecast(scenario: Scenario): Forecast {
       },
       lifetime: { ...lifetime, unit: "ns" },
       diffusion_length: { ...length, unit: "um" },
+      repulsion: withUnit(precision.repulsion, "1"),
       k_n0: withUnit(precision.annihilation, "1/ns"),
       capture: withUnit(precision.capture, "1/ns"),
       trap_lifetime: withUnit(precision.trapLifetime, "ns"),
@@ -128,7 +130,9 @@ export function roadOf({ medium, recording, kind }: Scenario): Forecast["road"] 
 function precisionOf(scenario: Scenario, road: Forecast["road"]): StackPrecision | null {
   if (road === "whole_stack") return stackPrecision(scenario);
   const widths = widthsPrecision(scenario, expectation(scenario));
-  return widths === null ? null : { ...widths, annihilation: null, capture: null, trapLifetime: null };
+  return widths === null
+    ? null
+    : { ...widths, repulsion: null, annihilation: null, capture: null, trapLifetime: null };
 }
 
 /** Null where the changed plan is beyond the model. */

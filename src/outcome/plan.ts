@@ -28,7 +28,7 @@ export function planFromScenario(text: string, file: string, changes: PlanChange
 
 /**
  * The plan that repeats a pilot recording: its settings, light, background and size, with what its result says of D, τ,
- * spot, annihilation and traps taken as true.
+ * spot, repulsion, annihilation and traps taken as true.
  *
  * @param text result.json of `spread`
  * @throws InputFault where it is no such result, or one without D or lifetime

@@ -1,3 +1,4 @@
+import { pushedTime } from "../field/pushed-spread.ts";
 import { centreOf } from "../field/recording.ts";
 import type { Scenario } from "../field/scenario.ts";
 import { similarLight } from "../field/similar/similar-light.ts";
@@ -21,6 +22,8 @@ import type { Expected, WidthsPrecision } from "./precision.ts";
 
 /** What the whole-stack fit can tell; µm and ns. */
 export interface StackPrecision extends WidthsPrecision {
+  /** β = u₀n₀/k_BT; null where the scenario has no repulsion. */
+  readonly repulsion: Expected | null;
   /** k n₀, 1/ns; null where the scenario has no annihilation. */
   readonly annihilation: Expected | null;
   /** c, 1/ns, and τ_m, ns; null where the scenario has no traps. */
@@ -68,6 +71,7 @@ export function stackPrecision(scenario: Scenario): StackPrecision | null {
     diffusion: expected(d.value, d.gradient),
     lifetime: alone("tau")!,
     length: { value: length, u: length > 0 ? length2.u / (2 * length) : Math.sqrt(length2.u) },
+    repulsion: alone("repulsion"),
     annihilation: alone("k_n0"),
     capture: alone("capture"),
     trapLifetime: alone("trap_lifetime"),
@@ -99,7 +103,8 @@ function expectedData(scenario: Scenario): StackData {
     noise: noiseLaw(scenario.acquisition.detector),
     frames: used.map((frame) => {
       const delay = delays[frame]!;
-      const time = Math.max(delay + gate, period === null ? 0 : delay + gate + period);
+      const age = Math.max(delay + gate, period === null ? 0 : delay + gate + period);
+      const time = pushedTime(medium, start, age);
       const of = (axis: 0 | 2): number => start.covariance[axis] + 2 * medium.diffusion[axis] * time;
       const variance = WIDENED * Math.max(of(0), of(2)) + psfVariance;
       const [x, y] = centreOf(recording, frame);

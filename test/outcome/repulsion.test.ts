@@ -1,4 +1,6 @@
 import { describe, expect, it } from "vitest";
+import { forecast } from "../../src/outcome/forecast.ts";
+import { planFromResult } from "../../src/outcome/plan.ts";
 import { analysed, codesOf, type Keys, pull, recorded } from "./recordings.ts";
 
 const DIPOLAR = { layer_distance: "0.65 nm", temperature: "30 K", density: "2e11 cm^-2" };
@@ -52,6 +54,15 @@ describe("dipolar excitons that repel each other", () => {
     expect(plain.field?.repulsion).toBe(null);
     expect(plain.quantities.diffusion_coefficient.from).toBe("line");
     expect(plain.verdict.level).toBe("sound");
+  });
+
+  it("make a pilot whose forecast keeps β, and the errors of D, τ and β that its own counting gave", () => {
+    const again = planFromResult(JSON.stringify(result), "result.json", {});
+    const { diffusion_coefficient: d, lifetime, repulsion: beta } = forecast(again).quantities;
+    expect(beta!.value).toBeCloseTo(field!.repulsion!.value, 6);
+    expect(Math.abs(beta!.u / field!.repulsion!.u! - 1)).toBeLessThan(0.05);
+    expect(Math.abs(d.u / quantities.diffusion_coefficient.u_statistical - 1)).toBeLessThan(0.05);
+    expect(Math.abs(lifetime.u / quantities.lifetime!.u_statistical - 1)).toBeLessThan(0.05);
   });
 
   it("without a fit of the whole stack are never sound: how much ΔE/4k_BT may hide is said", () => {
