@@ -23,6 +23,7 @@ import { firstShape, halves } from "./evidence.ts";
 import { withFoot } from "./footed-start.ts";
 import { diffusionOf, type Joint } from "./joint.ts";
 import type { Reading } from "./reading.ts";
+import { sparePixels } from "./spared-pixels.ts";
 
 /** How far from the centre pixels are looked at one by one, in standard deviations of the frame's spot. */
 const REACH = 5;
@@ -48,8 +49,11 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const start = startOf(reading, joint, data);
   const fitAll = (to: StackData, form: Symmetry, from: Values): StackFits | null =>
     fitCandidates(to, form, from, hint, isDipolar(acquisition) ? repulsionHint(reading) : null);
-  const gaussian = { data, fits: fitAll(data, symmetry, start) };
-  const ample = (): StackData => stackDataOf(reading, FOOT);
+  const first = fitAll(data, symmetry, start);
+  const spare = (to: StackData): StackData => (first === null ? to : sparePixels(to, first.preferred));
+  const spared = spare(data);
+  const gaussian = { data: spared, fits: spared === data ? first : fitAll(spared, symmetry, start) };
+  const ample = (): StackData => spare(stackDataOf(reading, FOOT));
   const { fits, data: used } = withFoot(gaussian, symmetry, start, firstShape(reading), ample, fitAll);
   return fits === null ? null : { data: used, fits };
 }
