@@ -1,13 +1,12 @@
 import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
 import { Evolution } from "../../src/field/evolution.ts";
-import { type Grid, gridFor, moments } from "../../src/field/grid.ts";
+import { type Grid, gaussianOnGrid, gridFor, moments } from "../../src/field/grid.ts";
 import { type Medium, peakDensity, plainMedium, type Start } from "../../src/field/medium.ts";
 import { pushedTime } from "../../src/field/pushed-spread.ts";
 import { nodesOver } from "../../src/field/quadrature.ts";
-import { readScenario } from "../../src/field/scenario.ts";
 import { similarLight } from "../../src/field/similar/similar-light.ts";
-import { expectation } from "../../src/field/synthesise.ts";
+import { travelled } from "../../src/field/similar/travelled.ts";
 import { movingTime } from "../../src/field/travel.ts";
 import type { Covariance } from "../../src/frame/spot.ts";
 import { at, picture, moments as pictureMoments, problem, square } from "./similar/problems.ts";
@@ -261,40 +260,37 @@ describe("movingTime with repulsion", () => {
     ends += Math.exp(-end / tau) * (travelled() + d * tau);
     expect(Math.abs((d * movingTime(medium, ROUND)) / ends - 1)).toBeLessThan(2e-5);
   });
-});
 
-describe("a scenario with repulsion", () => {
-  const text = (repulsion: number) => `[recording]
-frames = 4
-width = 24
-height = 24
-photons = 1e4
-[space]
-pixel = "0.1 um"
-[time]
-first = "0 ns"
-step = "1 ns"
-[motion]
-diffusion_coefficient = "0.2 cm^2/s"
-sigma0 = "0.3 um"
-repulsion = ${repulsion}
-[life]
-lifetime = "5 ns"`;
-
-  it("has motion.repulsion as by how much of itself D is larger at the peak, and its truth says so", () => {
-    const scenario = readScenario(text(0.8), "scenario.toml");
-    expect(scenario.medium.repulsion * peakDensity(scenario.start)).toBeCloseTo(0.8, 12);
-    const { truth } = expectation(scenario);
-    expect(truth.repulsion).toBe(0.8);
-    const variances = truth.frames.map(({ variance_um2 }) => variance_um2);
-    // faster than 2D, slower than 2D(1 + β/4), which is only the beginning
-    const first = (variances[1]! - variances[0]!) / (2 * 0.02);
-    expect(first).toBeGreaterThan(1.1);
-    expect(first).toBeLessThan(1.2);
-  });
-
-  it("is refused below zero and where its value has a slip", () => {
-    expect(() => readScenario(text(-1), "scenario.toml")).toThrow(/motion\.repulsion = -1 is below zero/);
-    expect(() => readScenario(text(1e4), "scenario.toml")).toThrow(/motion\.repulsion is more than 100/);
+  it("is that of a core on a foot too, by the quick solver against the sum over one grid", () => {
+    const [tau, d, beta, end] = [1.5, 0.05, 2, 9];
+    const foot = { share: 0.3, ratio: 2.5 };
+    const wide = 0.1 * foot.ratio;
+    const peak = 0.7 / (2 * Math.PI * 0.1) + 0.3 / (2 * Math.PI * wide);
+    const start: Start = { amount: 2 * Math.PI * wide * peak, covariance: [wide, 0, wide] };
+    const medium = pushed(beta, [d, 0, d], start, tau);
+    const grid: Grid = { nx: 128, ny: 128, hx: 0.1, hy: 0.1 };
+    const evolution = new Evolution(medium, start, grid, 1e-6);
+    const [core, outer] = [
+      gaussianOnGrid(grid, 0.7, [0.1, 0, 0.1]),
+      gaussianOnGrid(grid, 0.3, [wide, 0, wide]),
+    ];
+    evolution.free.set(core.map((n, i) => n + outer[i]!));
+    let sum = 0;
+    for (const [from, to] of [
+      [0, 1],
+      [1, 4],
+      [4, end],
+    ] as const) {
+      for (const { at, weight } of nodesOver(from, to, 4 / (to - from) + 1 / tau)) {
+        evolution.advance(at);
+        const { amount } = moments(grid, evolution.free);
+        sum += weight * amount * (1 + 0.5 * medium.repulsion * meanDensity(evolution.free));
+      }
+    }
+    sum += Math.exp(-end / tau) * tau;
+    const quick = travelled(
+      problem({ foot, start: [0.1, 0, 0.1], diffusion: [d, 0, d], lifetime: tau, repulsion: beta }),
+    );
+    expect(Math.abs(quick / (d * sum) - 1)).toBeLessThan(3e-4);
   });
 });

@@ -38,7 +38,7 @@ function movingTimeOf(problem: SimilarProblem): number {
       weights.fill(0);
       timeline.addFree(at, weight, weights);
       // pairs fall twice as fast
-      const both = 0.5 * problem.repulsion * Math.exp(-removal * at);
+      const both = 0.5 * life.repulsion * Math.exp(-removal * at);
       sum += dot(weights, left) + both * dot(weights, pairs);
     }
   }
