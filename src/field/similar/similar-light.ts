@@ -35,7 +35,7 @@ export interface Resolution {
  * Fine enough for profiles right to 1e-5 of their peak.
  *
  * Annihilation flattens the top, diffusion rounds it again: modes go with ln(κ/d), measured against 64 modes for k n₀ τ
- * up to 30. Repulsion gives the spot an edge: modes measured against the Fourier solver, 1e-5 for β up to 3 and 1e-4 at
+ * up to 30. Repulsion gives the spot an edge: modes measured against the Fourier solver, 1e-5 for β up to 3 and 2e-4 at
  * 10 where the spot is round, 3e-4 at 10 in a quarter plane, whose modes cost more.
  */
 export function resolutionOf(problem: SimilarProblem): Resolution {
