@@ -86,7 +86,7 @@ export function judgeField(
 
 function tried({ fits }: WholeStack): string {
   const repulsion = fits.fits.some(({ candidate }) => candidate.repulsion);
-  return `diffusion, annihilation, capture, both${repulsion ? ", repulsion" : ""}`;
+  return `diffusion, annihilation, capture, both${repulsion ? ", repulsion, repulsion and annihilation" : ""}`;
 }
 
 /** What is said of dipolar excitons' widths where no fit of the whole stack asks for repulsion. */
@@ -200,6 +200,8 @@ function whyNot(fit: CandidateFit): string {
       return `traps catch excitons (at ${rate(fit, "capture")}) that then stand still`;
     case "annihilation_and_capture":
       return `excitons annihilate each other (k·n₀ = ${rate(fit, "k_n0")}) and traps catch them (at ${rate(fit, "capture")})`;
+    case "annihilation_and_repulsion":
+      return `excitons push each other apart (u₀n₀/k_BT = ${quoted(fit, "repulsion")} at the centre right after the pulse) and annihilate each other (k·n₀ = ${rate(fit, "k_n0")})`;
     case "repulsion":
       return `excitons push each other apart (u₀n₀/k_BT = ${quoted(fit, "repulsion")} at the centre right after the pulse)`;
     case "diffusion":

@@ -28,6 +28,7 @@ const candidateName = z.enum([
   "capture",
   "annihilation_and_capture",
   "repulsion",
+  "annihilation_and_repulsion",
 ]);
 
 const withU = z.strictObject({ value: number, u: number.min(0) });

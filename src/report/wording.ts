@@ -46,6 +46,7 @@ export const CANDIDATE: Readonly<Record<CandidateName, string>> = {
   capture: "diffusion and capture into traps",
   annihilation_and_capture: "diffusion, annihilation and capture",
   repulsion: "diffusion and repulsion",
+  annihilation_and_repulsion: "diffusion, annihilation and repulsion",
 };
 
 const FROM: Readonly<Record<Quantity["from"], string>> = {

@@ -56,6 +56,25 @@ describe("dipolar excitons that repel each other", () => {
     expect(plain.verdict.level).toBe("sound");
   });
 
+  it("that annihilate each other too give D, L, τ, β and k·n₀ of the truth all the same", () => {
+    const both = pushed(1, { life: { lifetime: "5 ns", annihilation: "0.3 /ns" } });
+    const { result: mixed } = analysed(both.stack);
+    expect(mixed.field?.preferred).toBe("annihilation_and_repulsion");
+    const { diffusion_coefficient: d, lifetime, diffusion_length: length } = mixed.quantities;
+    expect(Math.abs(pull(d, both.truth.diffusion_coefficient_cm2_per_s))).toBeLessThan(3);
+    expect(Math.abs(pull(length!, both.truth.diffusion_length_um))).toBeLessThan(3);
+    expect(Math.abs(pull(lifetime!, both.truth.lifetime_ns))).toBeLessThan(3);
+    for (const [found, truth] of [
+      [mixed.field!.repulsion!, 1],
+      [mixed.field!.k_n0!, 0.3],
+    ] as const) {
+      expect(Math.abs(found.value - truth) / found.u!).toBeLessThan(3);
+    }
+    expect(mixed.verdict.level).toBe("caution");
+    expect(codesOf(mixed)).toContain("annihilation-suspected");
+    expect(codesOf(mixed)).toContain("repulsion-suspected");
+  });
+
   it("make a pilot whose forecast keeps β, and the errors of D, τ and β that its own counting gave", () => {
     const again = planFromResult(JSON.stringify(result), "result.json", {});
     const { diffusion_coefficient: d, lifetime, repulsion: beta } = forecast(again).quantities;

@@ -26,9 +26,10 @@ const PRICE = 4;
 
 /**
  * Fits the candidates of a whole stack (diffusion; with annihilation; with capture; with both; where excitons are known
- * to be dipolar, with repulsion) and chooses: a richer candidate must beat every poorer one by 4 corrected Akaike units a
- * parameter beyond the criterion's own price, so that plain stacks keep the plain model in more than 95 % of cases (for
- * one parameter chance gives a fall of χ² by 6 in 1.4 %, for two by 12 in 0.2 %).
+ * to be dipolar, with repulsion, and with repulsion and annihilation) and chooses: a richer candidate must beat every
+ * poorer one by 4 corrected Akaike units a parameter beyond the criterion's own price, so that plain stacks keep the
+ * plain model in more than 95 % of cases (for one parameter chance gives a fall of χ² by 6 in 1.4 %, for two by 12 in
+ * 0.2 %).
  *
  * Caught excitons are taken to shine like free ones (ε = 1): the light tells λ = 1/τ + c and ε·c, not the three apart.
  *
@@ -48,7 +49,7 @@ export function fitCandidates(
   const pixels = data.frames.reduce((sum, { patch }) => sum + patch.data.length, 0);
   for (const candidate of CANDIDATES) {
     if (candidate.repulsion && repulsion === null) continue;
-    if (candidate.annihilation && candidate.capture && !eitherGains(found)) continue;
+    if (candidate.annihilation && (candidate.capture || candidate.repulsion) && !eitherGains(found)) continue;
     const names = namesOf(data.kind, candidate, symmetry);
     const starts = startsOf(candidate, start, { annihilation: hint, repulsion: repulsion ?? 0 }, found);
     const tries = isDescribed(found) ? starts.slice(0, 1) : starts;
@@ -94,7 +95,7 @@ const DESCRIBED = 0.05;
 /** A fit with traps goes on only while it may gain this much over simpler ones: χ² with two more parameters. */
 const WORTH_A_FIT = 4;
 
-/** Whether annihilation or capture alone is worth anything over plain diffusion: if neither is, both are not fitted. */
+/** Whether one process alone is worth anything over plain diffusion: if none is, two together are not fitted. */
 function eitherGains(found: readonly Omit<CandidateFit, "weight">[]): boolean {
   const plain = found.find((fit) => fit.candidate.name === "diffusion");
   return plain === undefined || found.some((fit) => fit.deviance < plain.deviance - WORTH_A_FIT);
@@ -184,5 +185,12 @@ function startsOf(
     case "repulsion":
       // plain diffusion reads some mean of D(1 + β/4), as it begins, and D, as it ends
       return [{ ...moving(plain, 1 / (1 + hints.repulsion / 8)), repulsion: hints.repulsion }];
+    case "annihilation_and_repulsion": {
+      const [repulsion, annihilation] = [before("repulsion"), before("annihilation")];
+      return [
+        ...(repulsion === null ? [] : [{ ...repulsion, k_n0: 0.1 / tau }]),
+        ...(annihilation === null ? [] : [{ ...annihilation, repulsion: 0.3 }]),
+      ];
+    }
   }
 }

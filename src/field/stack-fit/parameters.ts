@@ -5,7 +5,13 @@ import type { StackData } from "./stack-data.ts";
 
 /** What a candidate leaves free beside light, centre, start, D, τ and background. */
 export interface Candidate {
-  readonly name: "diffusion" | "annihilation" | "capture" | "annihilation_and_capture" | "repulsion";
+  readonly name:
+    | "diffusion"
+    | "annihilation"
+    | "capture"
+    | "annihilation_and_capture"
+    | "repulsion"
+    | "annihilation_and_repulsion";
   readonly annihilation: boolean;
   readonly capture: boolean;
   readonly repulsion: boolean;
@@ -17,6 +23,7 @@ export const CANDIDATES: readonly Candidate[] = [
   { name: "capture", annihilation: false, capture: true, repulsion: false },
   { name: "annihilation_and_capture", annihilation: true, capture: true, repulsion: false },
   { name: "repulsion", annihilation: false, capture: false, repulsion: true },
+  { name: "annihilation_and_repulsion", annihilation: true, capture: false, repulsion: true },
 ];
 
 /** Which components of start and motion are free: one for a round spot, three for an elliptical one. */
