@@ -50,12 +50,18 @@ function varianceOf({ line, laws, preferredLaw, times }: Reading): (frame: numbe
   };
 }
 
+/** Standard uncertainties from which light before the pulse is light. */
+const SEEN = 3;
+
 function lightOf({ stack, models, light, decays, flags }: Reading): (frame: number) => number {
   const fit = decays?.fits[decays.preferred] ?? null;
   const fitted = new Map(light.frames.map((frame, k) => [frame, fit?.prediction[k]]));
   const reached = stack.acquisition.period !== null || stack.acquisition.response !== null;
   return (i) => {
-    if (flags[i]!.includes("before-pulse") && !reached) return 0;
-    return fitted.get(i) ?? models.light(i);
+    const own = fitted.get(i);
+    if (own !== undefined || !flags[i]!.includes("before-pulse")) return own ?? models.light(i);
+    // what earlier pulses leave, as the frame shows it: a mean over its neighbours would see the new pulse
+    const { value, sigma } = light;
+    return reached && value[i]! > SEEN * sigma[i]! ? value[i]! : 0;
   };
 }

@@ -31,14 +31,17 @@ const ENDLESS = 100;
 /**
  * The 95 % intervals of the preferred fit: value ± 1.96 u where −2 ln L at both ends is a normal likelihood's within 10 %
  * along the line on which that one has its least rise, or where all are known so well that it must be; else by the profile
- * of the likelihood (see `profileInterval`).
+ * of the likelihood (see `profileInterval`). A model that does not describe the recording has no likelihood worth the
+ * search: value ± 1.96 u.
  *
+ * @param described whether the fit describes the recording
  * @param birge factor on u; its square is the factor on the level
  */
 export function fieldIntervals(
   data: StackData,
   fit: CandidateFit,
   birge: number,
+  described: boolean,
 ): ReadonlyMap<Ranged, Range> {
   const found = new Map<Ranged, Range>();
   if (!fit.converged) return found;
@@ -48,15 +51,21 @@ export function fieldIntervals(
   });
   const sharp = held.every(({ of: { value, u } }) => birge * u < SHARP * Math.abs(value));
   for (const { name, of } of held) {
-    const half = HALF * birge * of.u;
+    const limits = limitsOf(name, data, fit);
     found.set(
       name,
-      sharp
-        ? { ends: [of.value - half, of.value + half], profiled: false }
-        : rangeOf(name, of, data, fit, birge),
+      sharp || !described
+        ? { ends: normalEnds(of.value, birge * of.u, limits), profiled: false }
+        : rangeOf(name, of, fit, birge, limits),
     );
   }
   return found;
+}
+
+/** value ± 1.96 u; null for an end beyond what the quantity can be. */
+function normalEnds(value: number, u: number, [lowest, highest]: readonly [number, number]): Interval {
+  const [low, high] = [value - HALF * u, value + HALF * u];
+  return [low > lowest ? low : null, high < highest ? high : null];
 }
 
 function gradientOf(names: readonly Name[], name: Ranged, p: Float64Array): number[] {
@@ -64,10 +73,15 @@ function gradientOf(names: readonly Name[], name: Ranged, p: Float64Array): numb
   return names.map((each) => (each === name ? 1 : 0));
 }
 
-function rangeOf(name: Ranged, held: HeldFit, data: StackData, fit: CandidateFit, birge: number): Range {
+function rangeOf(
+  name: Ranged,
+  held: HeldFit,
+  fit: CandidateFit,
+  birge: number,
+  [lowest, highest]: readonly [number, number],
+): Range {
   const u = birge * held.u;
   const level = LEVEL * birge ** 2;
-  const [lowest, highest] = limitsOf(name, data, fit);
   const half = HALF * u;
   const [low, high] = [held.value - half, held.value + half];
   const normal = (x: number): boolean => {
@@ -78,7 +92,7 @@ function rangeOf(name: Ranged, held: HeldFit, data: StackData, fit: CandidateFit
   // where a parameter is held at its end the line does not see what the others gain by its coming back
   const straight = fit.held.length === 0 && !(lifetime && (low <= 0 || high >= highest));
   if (straight && normal(low) && normal(high)) {
-    return { ends: [low > lowest ? low : null, high < highest ? high : null], profiled: false };
+    return { ends: normalEnds(held.value, u, [lowest, highest]), profiled: false };
   }
   const { value, rise } = held;
   const scale = lifetime ? "rate" : "value";

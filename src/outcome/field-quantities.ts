@@ -49,7 +49,7 @@ export function fieldQuantities(data: StackData, { preferred }: StackFits): Fiel
       u: uOf(travelSlopes(data, names, parameters)),
     },
     birge,
-    ranges: fieldIntervals(data, preferred, birge),
+    ranges: fieldIntervals(data, preferred, birge, describes(preferred)),
   };
 }
 

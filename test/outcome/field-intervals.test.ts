@@ -28,7 +28,7 @@ describe("fieldIntervals", () => {
     for (let k = 0; k < draws; k++) {
       const data = draw(300 + k);
       const fit = fitted(data);
-      for (const [name, { ends }] of fieldIntervals(data, fit, 1)) {
+      for (const [name, { ends }] of fieldIntervals(data, fit, 1, true)) {
         const [low, high] = ends;
         const value = truth[name as keyof typeof truth];
         if ((low ?? 0) <= value && value <= (high ?? Number.POSITIVE_INFINITY)) {
@@ -48,7 +48,7 @@ describe("fieldIntervals", () => {
   it("widen with the scatter: a Birge factor of 1.5 more than does so for a profile's longer side", () => {
     const data = draw(300);
     const fit = fitted(data);
-    const [one, two] = [1, 1.5].map((birge) => fieldIntervals(data, fit, birge));
+    const [one, two] = [1, 1.5].map((birge) => fieldIntervals(data, fit, birge, true));
     const c = fit.parameters[names.indexOf("capture")]!;
     const above = (ranges: typeof one, x: number, name: Ranged): number => ranges!.get(name)!.ends[1]! - x;
     expect(above(two, c, "capture")).toBeGreaterThan(1.5 * above(one, c, "capture"));

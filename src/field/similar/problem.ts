@@ -39,6 +39,8 @@ export interface SimilarProblem {
   readonly period: number | null;
   /** Width of the strip that a trace collects from, µm; null for all of it. */
   readonly slit: number | null;
+  /** How far from the centre light will be asked for, µm; absent: as far as there is any. */
+  readonly reach?: number;
 }
 
 /** Pixel centres: x0 + i·pixel, y0 + j·pixel, in µm from the spot's centre. A trace has height 1 and no use for y0. */

@@ -167,6 +167,11 @@ function reachOf({ timeline }: Flow, { blur }: Optics, { delays, gate }: Similar
   return [Math.sqrt(Math.max(...square(0))), Math.sqrt(Math.max(...square(1)))];
 }
 
+/** Cuts a reach to what will be asked for: an axis' unit is 1/`scale` µm long, and interpolation looks a little further. */
+function within(problem: SimilarProblem, reach: number, scale: number): number {
+  return problem.reach === undefined ? reach : Math.min(reach, 1.1 * scale * problem.reach + 1);
+}
+
 /** Amounts and shares from each state's own amount; a frame's profile is made when it is first asked for. */
 function collected(
   problem: SimilarProblem,
@@ -198,8 +203,9 @@ function roundLight(
   { radialStep }: Resolution,
 ): SimilarLight {
   const optics = opticsOf(problem, frame);
-  const { radius, values } = roundScreen(flow, optics, reachOf(flow, optics, problem)[0], radialStep);
   const width = Math.sqrt(frame.area);
+  const reach = within(problem, reachOf(flow, optics, problem)[0], 1 / width);
+  const { radius, values } = roundScreen(flow, optics, reach, radialStep);
   const light = collected(problem, shares(flow), weights, (each) => {
     const profile = profileOf(values, each, 1 / (2 * Math.PI * frame.area));
     return (_, grid, out) => fillRound(profile, radius, width, grid, out);
@@ -220,7 +226,13 @@ function planarLight(
   { planarStep }: Resolution,
 ): SimilarLight {
   const optics = opticsOf(problem, frame);
-  const { axes, values, quarters } = planarScreen(flow, optics, reachOf(flow, optics, problem), planarStep);
+  const [along, across] = reachOf(flow, optics, problem);
+  const [x1, y1, x2, y2] = frame.map;
+  const reach = [
+    within(problem, along, Math.hypot(x1, y1)),
+    within(problem, across, Math.hypot(x2, y2)),
+  ] as const;
+  const { axes, values, quarters } = planarScreen(flow, optics, reach, planarStep);
   return collected(problem, shares(flow), weights, (light) => {
     const profile = profileOf(values, light, 1);
     if (!(profile[0]! > 0)) return (_, grid, out) => void out.fill(0, 0, grid.width * grid.height);

@@ -50,6 +50,8 @@ export function fitCandidates(
   for (const candidate of CANDIDATES) {
     if (candidate.repulsion && repulsion === null) continue;
     if (candidate.annihilation && (candidate.capture || candidate.repulsion) && !eitherGains(found)) continue;
+    // a foot that plain diffusion finds no end for is not what the recording shows: a lump, a second spot
+    if (symmetry.footed === true && found[0]?.converged === false) break;
     const names = namesOf(data.kind, candidate, symmetry);
     const starts = startsOf(candidate, start, { annihilation: hint, repulsion: repulsion ?? 0 }, found);
     const tries = isDescribed(found) ? starts.slice(0, 1) : starts;
