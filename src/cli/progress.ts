@@ -28,6 +28,17 @@ export function showProgress(stream: NodeJS.WriteStream | null, what = "frames")
     },
     end() {
       if (started) bar.stop();
+      started = false;
     },
   };
+}
+
+/** A line on a terminal that says what is being done, until it is done. */
+export function showNote(stream: NodeJS.WriteStream | null): {
+  readonly update: (text: string) => void;
+  readonly end: () => void;
+} {
+  if (stream?.isTTY !== true) return { update: () => {}, end: () => {} };
+  const wipe = "\r\u001b[2K";
+  return { update: (text) => stream.write(`${wipe}${text} …`), end: () => stream.write(wipe) };
 }

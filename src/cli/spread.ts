@@ -3,6 +3,7 @@ import type { Analysis, AnalysisOptions } from "../outcome/analysis.ts";
 import { closurePlan } from "../outcome/closure.ts";
 import { hireArtist } from "../report/draw-aside.ts";
 import { renderTerminal } from "../report/terminal.ts";
+import { CANDIDATE } from "../report/wording.ts";
 import { writeReports } from "../report/write.ts";
 import { discardUnfinished } from "../report/write-whole.ts";
 import { openStack } from "../stack/open.ts";
@@ -11,7 +12,7 @@ import { seedFrom, windowFrom } from "./arguments.ts";
 import { runClosure, stacksFrom } from "./closure.ts";
 import { checkFolder, writing } from "./folder.ts";
 import { uninterrupted } from "./interrupt.ts";
-import { showProgress } from "./progress.ts";
+import { showNote, showProgress } from "./progress.ts";
 import { openOptions, type SettingOptions } from "./settings.ts";
 import { ExitCode, textWidth, wantsColour } from "./shell.ts";
 
@@ -68,10 +69,19 @@ function report(analysis: Analysis, folder: string, options: SpreadOptions): Exi
 
 function analyseWatched(stack: Stack, wanted: AnalysisOptions, stream: NodeJS.WriteStream | null): Examined {
   const progress = showProgress(stream);
+  const note = showNote(stream);
   try {
-    return examine(stack, { ...wanted, onProgress: progress.update });
+    return examine(stack, {
+      ...wanted,
+      onProgress: progress.update,
+      onCandidate(name) {
+        progress.end();
+        note.update(`whole stack: ${CANDIDATE[name]}`);
+      },
+    });
   } finally {
     progress.end();
+    note.end();
   }
 }
 

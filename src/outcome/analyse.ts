@@ -119,7 +119,7 @@ function withField(
   const { field: wish = "auto" } = options;
   const dipolar = isDipolar(reading.stack.acquisition);
   const pays = wish === "always" || (wish === "auto" && (isMisled(plain) || dipolar));
-  const whole = pays ? fitWholeStack(reading, joint) : null;
+  const whole = pays ? fitWholeStack(reading, joint, options.onCandidate) : null;
   if (whole === null) {
     const verdict = dipolar ? repulsionNotTested(plain, reading.stack.acquisition) : plain;
     return { outcome: widths, verdict, field: null, whole };

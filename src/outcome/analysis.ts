@@ -1,3 +1,4 @@
+import type { Candidate } from "../field/stack-fit/parameters.ts";
 import type { Spot } from "../frame/spot.ts";
 import type { Stack } from "../stack/stack.ts";
 import type { Result } from "./result.ts";
@@ -39,4 +40,6 @@ export interface AnalysisOptions {
   readonly seed?: number;
   /** Told after each frame. */
   readonly onProgress?: (done: number, total: number) => void;
+  /** Told before each model that is fitted to the whole stack. */
+  readonly onCandidate?: (name: Candidate["name"]) => void;
 }

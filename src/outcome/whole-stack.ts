@@ -19,6 +19,7 @@ import type { Acquisition } from "../stack/acquisition.ts";
 import type { Stack } from "../stack/stack.ts";
 import { meanDiffusion } from "../transport/line.ts";
 import { perAxis } from "../transport/width.ts";
+import type { AnalysisOptions } from "./analysis.ts";
 import { firstShape, halves } from "./evidence.ts";
 import { withFoot } from "./footed-start.ts";
 import { diffusionOf, type Joint } from "./joint.ts";
@@ -38,7 +39,11 @@ export interface WholeStack {
  * Fits the whole stack at once, started from widths and decay; null where it cannot be: no decay to start from, light
  * that does not stand for the density, or a response that is not Gaussian.
  */
-export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null {
+export function fitWholeStack(
+  reading: Reading,
+  joint: Joint,
+  onCandidate?: AnalysisOptions["onCandidate"],
+): WholeStack | null {
   const { acquisition } = reading.stack;
   if (joint.decay === null || acquisition.sample.emissionOrder !== 1) return null;
   if (acquisition.response?.kind === "sampled") return null;
@@ -48,7 +53,7 @@ export function fitWholeStack(reading: Reading, joint: Joint): WholeStack | null
   const symmetry = symmetryOf(reading);
   const start = startOf(reading, joint, data);
   const fitAll = (to: StackData, form: Symmetry, from: Values): StackFits | null =>
-    fitCandidates(to, form, from, hint, isDipolar(acquisition) ? repulsionHint(reading) : null);
+    fitCandidates(to, form, from, hint, isDipolar(acquisition) ? repulsionHint(reading) : null, onCandidate);
   const first = fitAll(data, symmetry, start);
   const spare = (to: StackData): StackData => (first === null ? to : sparePixels(to, first.preferred));
   const spared = spare(data);

@@ -37,6 +37,7 @@ const PRICE = 4;
  * @param start values of plain diffusion, from widths and decay
  * @param hint k·n₀ by the decay of the light, 1/ns, where it gives one
  * @param repulsion β to start from, where excitons are known to be dipolar
+ * @param onCandidate told before each fit
  */
 export function fitCandidates(
   data: StackData,
@@ -44,6 +45,7 @@ export function fitCandidates(
   start: Values,
   hint: number | null,
   repulsion: number | null = null,
+  onCandidate: (name: Candidate["name"]) => void = () => {},
 ): StackFits | null {
   const found: Omit<CandidateFit, "weight">[] = [];
   const pixels = data.frames.reduce((sum, { patch }) => sum + patch.data.length, 0);
@@ -52,6 +54,7 @@ export function fitCandidates(
     if (candidate.annihilation && (candidate.capture || candidate.repulsion) && !eitherGains(found)) continue;
     // a foot that plain diffusion finds no end for is not what the recording shows: a lump, a second spot
     if (symmetry.footed === true && found[0]?.converged === false) break;
+    onCandidate(candidate.name);
     const names = namesOf(data.kind, candidate, symmetry);
     const starts = startsOf(candidate, start, { annihilation: hint, repulsion: repulsion ?? 0 }, found);
     const tries = isDescribed(found) ? starts.slice(0, 1) : starts;
