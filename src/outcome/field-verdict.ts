@@ -8,7 +8,7 @@ import { CM2_PER_S } from "./quantities.ts";
 import type { Result } from "./result.ts";
 import { thermalEnergy } from "./thermal-energy.ts";
 import { notToldApart } from "./told-apart.ts";
-import { levelOf, type Reason, reason } from "./verdict-reason.ts";
+import { levelOf, plusMinus, type Reason, reason } from "./verdict-reason.ts";
 import type { WholeStack } from "./whole-stack.ts";
 
 /** Reasons that say that widths and decay mislead, and that a model of the whole stack may do better. */
@@ -119,7 +119,7 @@ function wouldMislead(
   line: Quantities["quantities"]["diffusion_coefficient"],
   d: { value: number; u: number },
 ): Reason {
-  const claimed = `${line.value.toPrecision(3)} ± ${line.u.toPrecision(1)} cm²/s`;
+  const claimed = `${plusMinus(line.value, line.u)} cm²/s`;
   const agrees = Math.abs(d.value - line.value) < AGREES * Math.hypot(d.u, line.u);
   const because = [
     whyNot(fit),
@@ -189,7 +189,7 @@ function rate(fit: CandidateFit, name: "k_n0" | "capture"): string {
 function quoted(fit: CandidateFit, name: Name): string {
   const i = fit.names.indexOf(name);
   const u = birgeOf(fit) * Math.sqrt(Math.max(fit.covariance[i * fit.names.length + i]!, 0));
-  return `${fit.parameters[i]!.toPrecision(3)} ± ${u.toPrecision(1)}`;
+  return plusMinus(fit.parameters[i]!, u);
 }
 
 function whyNot(fit: CandidateFit): string {

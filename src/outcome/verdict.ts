@@ -5,7 +5,7 @@ import type { Quantities } from "./quantities.ts";
 import { CM2_PER_S } from "./quantities.ts";
 import type { Reading } from "./reading.ts";
 import type { Result } from "./result.ts";
-import { levelOf, type Reason, reason } from "./verdict-reason.ts";
+import { levelOf, plusMinus, type Reason, reason } from "./verdict-reason.ts";
 
 /** A departure this many standard deviations long is no chance; some ten signs are looked at in every recording. */
 const SURE = 4;
@@ -187,7 +187,7 @@ function noMotion({ quantities, reading }: Case): Reason | null {
     return reason(
       "unsound",
       "spot-shrinks",
-      `the spot becomes narrower with delay (D = ${value.toPrecision(2)} ± ${u.toPrecision(1)} cm²/s)`,
+      `the spot becomes narrower with delay (D = ${plusMinus(value, u)} cm²/s)`,
       "look for trapped light, defocus drift, a background left in, or species of different lifetime and width",
     );
   }
