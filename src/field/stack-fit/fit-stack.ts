@@ -3,7 +3,7 @@ import { endlessLifetime, holding, isEndless } from "./endless.ts";
 import { keepFoot } from "./keep-foot.ts";
 import type { Name, Values } from "./parameters.ts";
 import { valuesOf } from "./parameters.ts";
-import { deviance, naturalSize, type StackScore, scoreStack } from "./score-stack.ts";
+import { deviance, naturalSize, type StackScore, scoreStack, tryDeviance } from "./score-stack.ts";
 import type { StackData } from "./stack-data.ts";
 
 export interface StackOptimum {
@@ -150,17 +150,6 @@ function descend(
       return { p: trial, cost: trialCost, damping: Math.max(lambda / 10, 1e-7) };
   }
   return null;
-}
-
-/** −2 ln L, or null where no light follows from the parameters. */
-function tryDeviance(data: StackData, names: readonly Name[], p: Float64Array): number | null {
-  try {
-    const cost = deviance(data, names, p);
-    return Number.isFinite(cost) ? cost : null;
-  } catch (error) {
-    if (error instanceof RangeError) return null;
-    throw error;
-  }
 }
 
 /**

@@ -3,7 +3,7 @@ import { endlessLifetime, holding, isEndless } from "./endless.ts";
 import type { StackOptimum } from "./fit-stack.ts";
 import { keepFoot } from "./keep-foot.ts";
 import type { Name } from "./parameters.ts";
-import { deviance, type StackScore, scoreStack } from "./score-stack.ts";
+import { type StackScore, scoreStack, tryDeviance } from "./score-stack.ts";
 import type { StackData } from "./stack-data.ts";
 
 /** A whole-stack fit with a linear combination gᵀp of its parameters held. */
@@ -60,7 +60,7 @@ export function heldFit(data: StackData, fit: StackOptimum, gradient: readonly n
     value,
     u: Math.sqrt(variance),
     riseAlong(x) {
-      const cost = costOf(data, names, moved({ at: value, p: parameters }, x));
+      const cost = tryDeviance(data, names, moved({ at: value, p: parameters }, x));
       return cost === null ? null : cost - fit.deviance;
     },
     rise(x) {
@@ -79,7 +79,7 @@ function refit(
   start: Float64Array,
   gradient: readonly number[],
 ): { p: Float64Array; deviance: number } | null {
-  const cost = costOf(data, names, start);
+  const cost = tryDeviance(data, names, start);
   if (cost === null) return null;
   let best = { p: start, deviance: cost };
   for (let count = 0; count < MOST_STEPS; count++) {
@@ -117,7 +117,7 @@ function descend(
     const delta = stepOf(damping);
     if (delta === null) continue;
     const p = step(names, best.p, delta, endlessLifetime(data));
-    const cost = costOf(data, names, p);
+    const cost = tryDeviance(data, names, p);
     if (cost !== null && cost < best.deviance) return { p, deviance: cost };
   }
   return null;
@@ -180,16 +180,4 @@ function step(
   });
   keepFoot(names, p, to);
   return to;
-}
-
-/** −2 ln L, or null where no light follows from the parameters. */
-function costOf(data: StackData, names: readonly Name[], p: Float64Array): number | null {
-  if (!p.every(Number.isFinite)) return null;
-  try {
-    const cost = deviance(data, names, p);
-    return Number.isFinite(cost) ? cost : null;
-  } catch (error) {
-    if (error instanceof RangeError) return null;
-    throw error;
-  }
 }

@@ -221,3 +221,15 @@ function pixelDeviance(data: StackData, v: Values, base: Rendering, visit?: Visi
   }
   return sum;
 }
+
+/** −2 ln L, or null where no light follows from the parameters. */
+export function tryDeviance(data: StackData, names: readonly Name[], p: Float64Array): number | null {
+  if (!p.every(Number.isFinite)) return null;
+  try {
+    const cost = deviance(data, names, p);
+    return Number.isFinite(cost) ? cost : null;
+  } catch (error) {
+    if (error instanceof RangeError) return null;
+    throw error;
+  }
+}
