@@ -120,19 +120,7 @@ export function problemOf(data: StackData, v: Values): SimilarProblem {
     responseSigma: data.responseSigma,
     period: data.period,
     slit: data.slit,
-    reach: farthest(data, v),
   };
-}
-
-/** Distance from the centre to the farthest corner of any frame, µm. */
-function farthest({ frames, pixel }: StackData, v: Values): number {
-  const distances = frames.map(({ patch: { rectangle }, shift }) => {
-    const far = (start: number, count: number, centre: number): number =>
-      Math.max(Math.abs(start * pixel - centre), Math.abs((start + count) * pixel - centre));
-    const { x0, y0, width, height } = rectangle;
-    return Math.hypot(far(x0, width, v.x! + shift[0]), far(y0, height, (v.y ?? 0) + shift[1]));
-  });
-  return Math.max(...distances);
 }
 
 /** Σ₀ stands for the whole start. */

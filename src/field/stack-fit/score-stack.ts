@@ -20,8 +20,21 @@ interface Rendering {
   readonly y: number;
 }
 
+/** Light beyond the patches is asked for by no fit, and is not worked out. */
 function render(data: StackData, v: Values, resolution: Resolution): Rendering {
-  return { light: similarLight(problemOf(data, v), resolution), x: v.x!, y: v.y ?? 0 };
+  const problem = { ...problemOf(data, v), reach: farthest(data, v) };
+  return { light: similarLight(problem, resolution), x: v.x!, y: v.y ?? 0 };
+}
+
+/** Distance from the centre to the farthest corner of any frame, µm. */
+function farthest({ frames, pixel }: StackData, v: Values): number {
+  const distances = frames.map(({ patch: { rectangle }, shift }) => {
+    const far = (start: number, count: number, centre: number): number =>
+      Math.max(Math.abs(start * pixel - centre), Math.abs((start + count) * pixel - centre));
+    const { x0, y0, width, height } = rectangle;
+    return Math.hypot(far(x0, width, v.x! + shift[0]), far(y0, height, (v.y ?? 0) + shift[1]));
+  });
+  return Math.max(...distances);
 }
 
 /** The mean of frame k's pixels without background, photons for amplitude 1, into `out`. */

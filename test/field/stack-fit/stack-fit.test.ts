@@ -1,5 +1,4 @@
 import { describe, expect, it } from "vitest";
-import { readScenario } from "../../../src/field/scenario.ts";
 import { fitCandidates } from "../../../src/field/stack-fit/candidates.ts";
 import { fitStack } from "../../../src/field/stack-fit/fit-stack.ts";
 import { goodnessOf } from "../../../src/field/stack-fit/goodness.ts";
@@ -8,63 +7,13 @@ import { CANDIDATES, namesOf } from "../../../src/field/stack-fit/parameters.ts"
 import { deviance, naturalSize, scoreStack } from "../../../src/field/stack-fit/score-stack.ts";
 import type { StackData } from "../../../src/field/stack-fit/stack-data.ts";
 import { trimPatch } from "../../../src/field/stack-fit/stack-data.ts";
-import { drawFrames, expectation } from "../../../src/field/synthesise.ts";
-import { createRandom } from "../../../src/numerics/random.ts";
+import { drawnStacks } from "./drawn-stack.ts";
 
 const ROUND = { start: "round", diffusion: "isotropic" } as const;
-const SIDE = 36;
 
 /** Stacks from the Fourier solver of `synth`, which shares no code with the solver under the fit. */
-function stack(life: string, photons: number, seed: number): StackData {
-  const scenario = readScenario(
-    `[recording]
-frames = 16
-width = ${SIDE}
-height = ${SIDE}
-photons = ${photons}
-background = 0.4
-seed = 1
-[space]
-pixel = "0.1 um"
-[time]
-first = "0 ns"
-step = "0.6 ns"
-[motion]
-diffusion_coefficient = "0.2 cm^2/s"
-sigma0 = "0.3 um"
-centre_x = "1.76 um"
-centre_y = "1.71 um"
-[life]
-lifetime = "5 ns"
-${life}`,
-    "scenario.toml",
-  );
-  const frames = drawFrames(scenario, expectation(scenario), createRandom(seed));
-  return {
-    kind: "map",
-    pixel: 0.1,
-    noise: { excess: 1, floor: 0 },
-    gate: 0,
-    responseSigma: 0,
-    period: null,
-    slit: null,
-    blurVariance: 0,
-    frames: frames.map((counts, i) => ({
-      frame: i,
-      delay: 0.6 * i,
-      shift: [0, 0],
-      background: 0,
-      variance: 0.09 + 2 * 0.02 * 0.6 * i,
-      patch: {
-        rectangle: { x0: 0, y0: 0, width: SIDE, height: SIDE },
-        data: Float32Array.from(counts),
-        outerCount: 0,
-        outerSum: 0,
-        excluded: [],
-      },
-    })),
-  };
-}
+const stack = (life: string, photons: number, seed: number): StackData =>
+  drawnStacks(life, photons).draw(seed);
 
 const start = (photons: number): Values => ({
   amplitude: photons,
